@@ -1,0 +1,115 @@
+"""From a table of samples to what the engine computes with: totals, ligands, ionic strength, and what is missing.
+
+Not measured is not absent: what wasn't analysed is unknown (NaN) and said; a non-detect is an upper bound.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+
+from gley.columns import amount_column
+from gley.constants import nernst_slope_mV
+from gley.settings import StabilitySettings
+from gley.stability import water
+from gley.stability.solve import Bath
+
+LIGAND_INPUTS = {"C(IV)": "alkalinity", "S(VI)": "SO4", "S(-II)": "sulfide", "Cl(-I)": "Cl"}
+"""The analysis that tells each ligand channel."""
+
+MAX_IONIC_STRENGTH_M = 0.5
+
+
+@dataclass(frozen=True)
+class Waters:
+    """n samples ready for assignment. `totals` and `ligands` in mol/L (NaN = not measured) by element and channel;
+    `limited` says by the same names where a value is only an upper bound; `assumed` where the settings gave it.
+    """
+
+    pH: np.ndarray
+    Eh_mV: np.ndarray
+    pe: np.ndarray
+    temperature_C: np.ndarray
+    ionic_strength_M: np.ndarray
+    ionic_strength_basis: np.ndarray
+    X: np.ndarray
+    totals: Mapping[str, np.ndarray]
+    ligands: Mapping[str, np.ndarray]
+    limited: Mapping[str, np.ndarray]
+    assumed: Mapping[str, np.ndarray]
+    tied: np.ndarray
+
+    def bath(self, rows: np.ndarray, tied: bool, scale: float = 1.0) -> Bath:
+        """The waters of some rows for one treatment of sulfur; values that are limits are multiplied by `scale`."""
+        X = self.X[rows]
+        ligands = {name: self._scaled(self.ligands, name, rows, scale) for name in self.ligands}
+        if tied:
+            # an unmeasured sulfide adds nothing to the total that Eh then splits
+            ligands["S"] = ligands.pop("S(VI)") + np.nan_to_num(ligands.pop("S(-II)"))
+        return Bath(X, ligands, {"Fe": self._scaled(self.totals, "Fe", rows, scale)}, tied)
+
+    def log_total(self, element: str, rows: np.ndarray, scale: float = 1.0) -> np.ndarray:
+        """log10 of an element's total; −inf for zero, NaN for unknown."""
+        with np.errstate(divide="ignore", invalid="ignore"):
+            return np.log10(self._scaled(self.totals, element, rows, scale))
+
+    def _scaled(self, values: Mapping[str, np.ndarray], name: str, rows: np.ndarray, scale: float) -> np.ndarray:
+        taken = values[name][rows]
+        return np.where(self.limited[name][rows], taken * scale, taken) if scale != 1.0 else taken
+
+
+def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySettings) -> Waters:
+    """Read a table of samples.
+
+    Parameters
+    ----------
+    frame : DataFrame
+        Columns as in the house vocabulary: `pH`, `Eh_mV`, `temperature_C`, `SC_uS_cm`, `<constituent>_mol_L`,
+        `alkalinity_eq_L`, and `<constituent>_limit` holding `<` where the value is an upper bound. Any may be missing.
+    elements : tuple of str
+        Elements whose totals are wanted.
+    settings : StabilitySettings
+        Assumed totals, sulfur treatment, ionic strength rules.
+    """
+    pH = water._column(frame, "pH")
+    temperature = water._column(frame, "temperature_C")
+    temperature = np.where(np.isnan(temperature), settings.assumed_temperature_C, temperature)
+    Eh = water._column(frame, "Eh_mV")
+    strength, basis = water.ionic_strength(frame, settings.charge_balance_percent, settings.default_ionic_strength_M)
+    X = water.features(np.nan_to_num(pH, nan=7.0), temperature, strength)
+    totals, ligands, limited, assumed = {}, {}, {}, {}
+    for element in (*elements, *(() if "Fe" in elements else ("Fe",))):
+        key = "SO4" if element == "S" else element
+        totals[element], limited[element], assumed[element] = _total(frame, key, settings)
+    for channel, key in LIGAND_INPUTS.items():
+        ligands[channel], limited[channel], assumed[channel] = _total(frame, key, settings)
+    ligands["C(IV)"], assumed["C(IV)"] = _filled(water.inorganic_carbon(frame, X), "DIC", settings)
+    if "S" in totals:
+        totals["S"] = totals["S"] + np.nan_to_num(ligands["S(-II)"])
+        limited["S"] = limited["S(VI)"] & (limited["S(-II)"] | np.isnan(ligands["S(-II)"]))
+    tied = np.isnan(ligands["S(-II)"]) & ~np.isnan(ligands["S(VI)"])
+    if settings.sulfur == "tied":
+        tied = ~np.isnan(ligands["S(VI)"])
+    return Waters(
+        pH, Eh, Eh / nernst_slope_mV(temperature), temperature, strength, basis, X,
+        totals, ligands, limited, assumed, tied,
+    )  # fmt: skip
+
+
+def _total(frame: pd.DataFrame, key: str, settings: StabilitySettings) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Amounts of a constituent, where they are upper bounds, and where the settings' value was taken."""
+    values = water._column(frame, amount_column(key))
+    flags = frame.get(f"{key}_limit")
+    limited = np.zeros(len(frame), bool) if flags is None else (flags.fillna("").astype(str) == "<").to_numpy()
+    values, assumed = _filled(values, key, settings)
+    return values, limited, assumed
+
+
+def _filled(values: np.ndarray, key: str, settings: StabilitySettings) -> tuple[np.ndarray, np.ndarray]:
+    """Values with the settings' assumed total in the gaps, and where it was taken."""
+    stated = settings.assumed_mol_L.get(key)
+    gaps = np.isnan(values)
+    if stated is None:
+        return values, np.zeros(len(values), bool)
+    return np.where(gaps, float(stated), values), gaps
