@@ -1,7 +1,8 @@
 """Findings: everything the tool repaired, assumed, left out or doubts, each with its place and its cure.
 
 The catalogue of all rules is `findings.toml`, one section per room; a rule is raised in the room where its
-quantity first exists. `Findings.add` is the only way to make one, so a rule that isn't in the catalogue can't be raised.
+quantity first exists. `Findings.add` is the only way to make one: a rule that isn't in the catalogue can't be
+raised.
 """
 
 import tomllib
@@ -96,12 +97,8 @@ class Findings:
         entry = catalogue()[rule]
         shown = "" if value is None else str(value)
         words = {"value": shown, "place": str(place or ""), **words}
-        self._items.append(
-            Finding(
-                rule, entry.severity, place or Place(), shown,
-                entry.message.format(**words), entry.cure.format(**words),
-            )  # fmt: skip
-        )
+        message, cure = entry.message.format(**words), entry.cure.format(**words)
+        self._items.append(Finding(rule, entry.severity, place or Place(), shown, message, cure))
 
     def extend(self, other: Iterable[Finding]) -> None:
         """Append all of another collection."""

@@ -45,7 +45,7 @@ class ProbeSettings:
     sd_no_temperature_mV: float = _set(10.0, "added in quadrature when no temperature was measured", "mV", low=0)
     check_good_mV: float = _set(5.0, "check solution: deviation called good", "mV", low=0)
     check_accepted_mV: float = _set(10.0, "check solution: deviation accepted", "mV", low=0)
-    check_flagged_mV: float = _set(15.0, "check solution: deviation flagged and applied; above it, not applied", "mV", low=0)
+    check_flagged_mV: float = _set(15.0, "check solution: flagged but applied; above, not applied", "mV", low=0)
 
 
 @dataclass(frozen=True)
@@ -61,7 +61,7 @@ class StabilitySettings:
     assumed_temperature_C: float = _set(25.0, "temperature where none is known for the round", "°C")
     sulfur: str = _set("measured", "sulfate and sulfide as measured, or tied by Eh", allowed=("measured", "tied"))
     default_ionic_strength_M: float = _set(0.010, "ionic strength where nothing tells it", "mol/L", low=0)
-    charge_balance_percent: float = _set(10.0, "majors give the ionic strength when they balance within this", "%", low=0)
+    charge_balance_percent: float = _set(10.0, "majors give the ionic strength if they balance within this", "%", low=0)
     pH_sd_field: float = _set(0.1, "standard deviation of a field pH", low=0)
     pH_sd_laboratory: float = _set(0.3, "standard deviation of a laboratory pH", low=0)
     total_sd_percent: float = _set(10.0, "relative standard deviation of a concentration", "%", low=0)
@@ -95,7 +95,7 @@ class ChartSettings:
     Eh_max_mV: float = _set(800.0, "upper end of the Eh axis", "mV")
     dpi: int = _set(300, "resolution of PNG figures", low=50)
     fan: bool = _set(True, "draw how far lines move between the P10 and P90 of the totals")
-    background_mismatch: float = _set(0.30, "share of points off their drawn field above which the chart says so", low=0)
+    background_mismatch: float = _set(0.30, "share of points off their drawn field from which the chart says so", low=0)
 
 
 @dataclass(frozen=True)

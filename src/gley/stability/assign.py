@@ -127,7 +127,8 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
         no_sulfide = np.isnan(ready.ligands["S(-II)"])
         say(ready.tied & no_sulfide, "sulfide computed")
         say(no_sulfide & ~ready.tied, "ligand not measured: sulfide")
-    say(ready.ionic_strength_M > MAX_IONIC_STRENGTH_M, f"ionic strength above {MAX_IONIC_STRENGTH_M:g} M: activities uncertain")
+    strong = ready.ionic_strength_M > MAX_IONIC_STRENGTH_M
+    say(strong, f"ionic strength above {MAX_IONIC_STRENGTH_M:g} M: activities uncertain")
     return status
 
 
@@ -142,14 +143,17 @@ def _fill(table, status, rows, element, target, ready, spread, tied, choice, set
     def named(member: np.ndarray) -> np.ndarray:
         return np.where(member >= 0, names[member], "")
 
+    def fact(text) -> np.ndarray:
+        return np.array([text(item) for item in target.members], dtype=object)[solved.field]
+
     margin_pe, next_E = margins.along_pe(target, bath, pe, log_total, solved.field, choice)
     margin_pH, next_pH = margins.along_pH(target, bath, pe, log_total, solved.field, choice)
     odds = certainty.probabilities(target, bath, pe, log_total, spread.take(rows), choice, stated)
     _put(table, rows, {
         "field": named(solved.field),
-        "formula": np.array([item.formula for item in target.members], dtype=object)[solved.field],
-        "kind": np.array(["dissolved" if item.dissolved else "solid" for item in target.members], dtype=object)[solved.field],
-        "oxidation_state": np.array([f"{element}({item.oxidation_state})" for item in target.members], dtype=object)[solved.field],
+        "formula": fact(lambda item: item.formula),
+        "kind": fact(lambda item: "dissolved" if item.dissolved else "solid"),
+        "oxidation_state": fact(lambda item: f"{element}({item.oxidation_state})"),
         "dissolved_form": named(solved.form), "share": solved.share,
         "saturation": _saturation(target, solved, stated), "solid": named(solved.solid), "SI": solved.SI,
         "next_field": named(next_E), "margin_mV": margin_pe * nernst_slope_mV(ready.temperature_C[rows]),
@@ -178,17 +182,17 @@ def _saturation(target: System, solved: Solved, stated) -> np.ndarray:
 def _outcomes(part: pd.DataFrame, stated) -> list[str]:
     """The outcome in words: a sample that sits on a solid's line is buffered there; that is evidence, not doubt."""
     words = []
-    for row in part.itertuples():
-        on_line = row.saturation == "near" and row.solid in (row.field, row.next_field)
+    for row in part.to_dict("records"):
+        on_line = row["saturation"] == "near" and row["solid"] in (row["field"], row["next_field"])
         if on_line:
-            words.append(f"at equilibrium with {row.solid}")
-        elif row.probability >= stated.clear:
+            words.append(f"at equilibrium with {row['solid']}")
+        elif row["probability"] >= stated.clear:
             words.append("clear")
-        elif row.probability >= stated.likely:
+        elif row["probability"] >= stated.likely:
             words.append("likely")
         else:
-            other = row.second_field or row.next_field
-            words.append(f"between {row.field} and {other}" if other else "likely")
+            other = row["second_field"] or row["next_field"]
+            words.append(f"between {row['field']} and {other}" if other else "likely")
     return words
 
 

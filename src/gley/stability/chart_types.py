@@ -55,7 +55,7 @@ class Boundary:
 
     `protons` and `electrons` are counts on the left side of the reaction (electrons ≥ 0, protons negative when
     released). `kind` is vertical (no electron), horizontal (no proton) or sloped. `slope_mV_per_pH` and
-    `E_mV_at_pH0` describe the straight line where the named forms prevail; None on a vertical line, whose `pH` is given.
+    `E_mV_at_pH0` describe the straight line where the named forms prevail; None on a vertical line, whose `pH` stands.
     `points` is an array (n, 2) of pH and E in V along the line as drawn.
     """
 

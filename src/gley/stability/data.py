@@ -184,7 +184,7 @@ def _capacity(row: dict, genuine: dict, capacities: dict, rows: dict) -> float:
     if row["Cp_J_mol_K"]:
         return genuine[row["name"]]
     # nothing ties it to another species: its formation from the element gets ΔCp = 0
-    n_O, h, e, nu, others = _counts(row)
+    n_O, _, e, nu, others = _counts(row)
     element_cp = sum(count * _element_cp(el, rows) for el, count in ((row["element"], nu), *others.items()))
     return element_cp + n_O * genuine["H2O"] + e * _CP_ELECTRON
 
@@ -239,7 +239,9 @@ def names_like(text: str, pool: Iterable[str]) -> list[str]:
     return exact or [name for name, key in plain.items() if key.startswith(want)]
 
 
-def select(element: str, solids: str, with_names: Iterable[str] = (), without_names: Iterable[str] = ()) -> list[Species]:
+def select(
+    element: str, solids: str, with_names: Iterable[str] = (), without_names: Iterable[str] = ()
+) -> list[Species]:
     """Dissolved forms and solids of an element that compete, in the order of the table.
 
     Parameters

@@ -79,12 +79,9 @@ def environments(X: np.ndarray, totals: Mapping[str, np.ndarray], tied: bool, su
         lo, hi = interval(fences, len(level))
         missing = np.isnan(level)
         lo, hi = np.where(missing, -np.inf, lo), np.where(missing, np.inf, hi)
-        found.append(
-            Environment(
-                name, {**alpha, **dict.fromkeys(SULFUR, level)}, {**beta, **dict.fromkeys(SULFUR, slope)},
-                lo, hi, frozenset(channel for channel in SULFUR if channel != name), fences,
-            )  # fmt: skip
-        )
+        own_alpha, own_beta = {**alpha, **dict.fromkeys(SULFUR, level)}, {**beta, **dict.fromkeys(SULFUR, slope)}
+        others = frozenset(channel for channel in SULFUR if channel != name)
+        found.append(Environment(name, own_alpha, own_beta, lo, hi, others, fences))
     return found
 
 
@@ -110,20 +107,24 @@ def interval(fences: tuple, n: int) -> tuple[np.ndarray, np.ndarray]:
     return lo, hi
 
 
-def with_companion(environment: Environment, channel: str, alpha: np.ndarray, beta: np.ndarray) -> list[Environment]:
-    """Split an environment by the winner of a companion metal: its lines α (n, J) and β (J,) become a channel."""
+def with_companion(
+    environment: Environment, channel: str, alpha: np.ndarray, beta: np.ndarray, every: bool = False
+) -> list[Environment]:
+    """Split an environment by the winner of a companion metal: its lines α (n, J) and β (J,) become a channel.
+
+    Without `every`, environments that are empty for all samples are left out.
+    """
     found = []
     for j in range(len(beta)):
-        fences = _fences(alpha[:, j], float(beta[j]), [(alpha[:, i], float(beta[i])) for i in range(len(beta)) if i != j])
+        rivals = [(alpha[:, i], float(beta[i])) for i in range(len(beta)) if i != j]
+        fences = _fences(alpha[:, j], float(beta[j]), rivals)
         lo, hi = interval(fences, len(alpha))
         lo, hi = np.maximum(lo, environment.lo), np.minimum(hi, environment.hi)
-        if (lo < hi).any():
+        if every or (lo < hi).any():
             level = np.where(np.isfinite(alpha[:, j]), alpha[:, j], np.nan)
-            found.append(
-                Environment(
-                    f"{environment.state} {channel}{j}".strip(), {**environment.alpha, channel: level},
-                    {**environment.beta, channel: float(beta[j])}, lo, hi, environment.left_out,
-                    environment.fences + fences,
-                )  # fmt: skip
-            )
-    return sorted(found, key=lambda item: float(np.nanmedian(np.clip(item.lo, -50, 50))))
+            state = f"{environment.state} {channel}{j}".strip()
+            own_alpha = {**environment.alpha, channel: level}
+            own_beta = {**environment.beta, channel: float(beta[j])}
+            both = environment.fences + fences
+            found.append(Environment(state, own_alpha, own_beta, lo, hi, environment.left_out, both))
+    return found

@@ -18,7 +18,7 @@ _SHORTEST_STEP = 0.01
 def along_pe(
     target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, field: np.ndarray, choice: Choice
 ) -> tuple[np.ndarray, np.ndarray]:
-    """Signed change of pe to the nearest other field (+ = pe must rise; NaN beyond reach) and that field's member (−1)."""
+    """Signed change of pe to the nearest other field (+ = pe must rise; NaN beyond reach) and its member (−1 = none)."""
     up, above = _walk(target, bath, pe, log_total, field, choice, +1)
     down, below = _walk(target, bath, pe, log_total, field, choice, -1)
     rising = up <= down
@@ -52,7 +52,8 @@ def _walk(target, bath, pe, log_total, field, choice, direction) -> tuple[np.nda
             beyond[rows[changed]] = named[changed]
             rows, here_pick = rows[~changed], ~changed
             end = (here.hi if direction > 0 else here.lo)[here_pick]
-            crossing, rival = _first_crossing(lines.alpha[here_pick], lines.beta, winner[here_pick], position[rows], direction)
+            alpha = lines.alpha[here_pick]
+            crossing, rival = _first_crossing(alpha, lines.beta, winner[here_pick], position[rows], direction)
             stops = np.isfinite(crossing) & (crossing * direction <= end * direction)
             distance[rows[stops]] = np.abs(crossing - pe[rows])[stops]
             beyond[rows[stops]] = _forms(lines, here_pick, rival)[stops]
@@ -87,7 +88,7 @@ def _first_crossing(alpha, beta, winner, position, direction) -> tuple[np.ndarra
 def along_pH(
     target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, field: np.ndarray, choice: Choice
 ) -> tuple[np.ndarray, np.ndarray]:
-    """Signed change of pH at constant Eh to the nearest other field within pH 0-14 (NaN = none) and that field's member."""
+    """Signed change of pH at constant Eh to the nearest other field in pH 0-14 (NaN = none) and its member."""
     up, above = _march(target, bath, pe, log_total, field, choice, +1)
     down, below = _march(target, bath, pe, log_total, field, choice, -1)
     rising = up <= down

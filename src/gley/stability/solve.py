@@ -53,8 +53,10 @@ class Bath:
         X[:, 3] = pH
         return replace(self, X=X)
 
-    def environments(self, target: System, choice: Choice) -> list[Environment]:
-        """Ligand environments that a system's species need, companions (Fe before As) included."""
+    def environments(self, target: System, choice: Choice, every: bool = False) -> list[Environment]:
+        """Ligand environments that a system's species need, companions (Fe before As) included; with `every` also
+        those that no sample is in, so that the list is the same at any pH.
+        """
         found = environments(self.X, self.ligands, self.tied, choice.sulfur_solid)
         if "Fe" not in target.channels:
             return found
@@ -67,13 +69,15 @@ class Bath:
         split = []
         for environment in found:
             lines = iron.lines(self.X, np.where(known, log_total, -np.inf), environment)
-            split += with_companion(environment, "Fe", lines.alpha, lines.beta)
+            split += with_companion(environment, "Fe", lines.alpha, lines.beta, every)
         return split
 
 
 @dataclass(frozen=True)
 class Solved:
-    """Per sample: environment index, winning candidate, member that names the field, and its line's environment list."""
+    """Per sample: index of its environment, the winning candidate, the member that names the field, and beside it the
+    largest dissolved form with its share, and the solid with the highest SI (−1 = none).
+    """
 
     environment: np.ndarray
     winner: np.ndarray

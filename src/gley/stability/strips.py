@@ -6,7 +6,7 @@ then gives its field exactly.
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -44,24 +44,54 @@ class Plane:
     choice: Choice
     bath_at: Callable[[np.ndarray], Bath]
     log_total: float
+    states: tuple[str, ...] = ()
     nodes: np.ndarray = field(default_factory=lambda: np.array([]))
 
     def environments(self, pH: np.ndarray) -> list[Environment]:
-        """Ligand environments at each pH."""
-        return self.bath_at(pH).environments(self.target, self.choice)
+        """Ligand environments at each pH, the same list whatever the pH."""
+        found = self.bath_at(pH).environments(self.target, self.choice, every=True)
+        return [item for item in found if not self.states or item.state in self.states]
 
     def lines(self, pH: np.ndarray, environment: Environment):
         """Candidates' lines at each pH in an environment evaluated at the same pH."""
         return self.target.lines(self.bath_at(pH).X, np.full(len(pH), self.log_total), environment)
 
 
-def cut(plane: Plane, pH_min: float, pH_max: float) -> Plane:
-    """The plane with its strip limits found."""
+def cut(plane: Plane, window: tuple[float, float, float, float]) -> Plane:
+    """The plane with its strip limits found; `window` is (pH_min, pH_max, pe_min, pe_max)."""
+    pH_min, pH_max, pe_min, pe_max = window
+    grid = np.linspace(pH_min, pH_max, int((pH_max - pH_min) / _SCAN) + 2)
+    # environments that no part of the window is in would only cost time
+    present = [
+        item
+        for item in plane.environments(grid)
+        if ((item.lo < item.hi) & (item.lo < pe_max) & (item.hi > pe_min)).any()
+    ]
+    plane = replace(plane, states=tuple(item.state for item in present))
     exact = np.unique(np.concatenate([[pH_min, pH_max], _form_changes(plane, pH_min, pH_max)]))
     exact = exact[np.concatenate([[True], np.diff(exact) > 1e-9])]
     exact[-1] = pH_max
     nodes = _refine(lambda pH: _bending(plane, pH), exact)
-    return Plane(plane.target, plane.choice, plane.bath_at, plane.log_total, nodes)
+    return replace(plane, nodes=np.unique(np.concatenate([nodes, _vertical_lines(plane, nodes)])))
+
+
+def _vertical_lines(plane: Plane, nodes: np.ndarray) -> np.ndarray:
+    """pH of the crossings of candidates with the same slope: where both bend alike a chord would misplace them."""
+    found = []
+    for e, environment in enumerate(plane.environments(nodes)):
+        lines = plane.lines(nodes, environment)
+        i, j = np.nonzero(np.triu(lines.beta[:, None] == lines.beta[None, :], 1))
+        gap = lines.alpha[:, i] - lines.alpha[:, j]
+        k, pair = np.nonzero(gap[:-1] * gap[1:] < 0)
+        lo, hi, sign = nodes[k], nodes[k + 1], np.sign(gap[k, pair])
+        for _ in range(48 if len(k) else 0):
+            middle = 0.5 * (lo + hi)
+            alpha = plane.lines(middle, plane.environments(middle)[e]).alpha
+            each = np.arange(len(k))
+            same = np.sign(alpha[each, i[pair]] - alpha[each, j[pair]]) == sign
+            lo, hi = np.where(same, middle, lo), np.where(same, hi, middle)
+        found.append(hi)
+    return np.concatenate(found) if found else np.array([])
 
 
 def _bending(plane: Plane, pH: np.ndarray) -> np.ndarray:
@@ -100,18 +130,13 @@ def _form_changes(plane: Plane, pH_min: float, pH_max: float) -> np.ndarray:
 
     grid = np.linspace(pH_min, pH_max, int((pH_max - pH_min) / _SCAN) + 2)
     before = ranks(grid)
-    found = []
-    for c in range(before.shape[1]):
-        k = np.flatnonzero(before[1:, c] != before[:-1, c])
-        lo, hi, own = grid[k].copy(), grid[k + 1].copy(), before[k, c]
-        for _ in range(48):
-            if not len(k):
-                break
-            middle = 0.5 * (lo + hi)
-            same = ranks(middle)[:, c] == own
-            lo, hi = np.where(same, middle, lo), np.where(same, hi, middle)
-        found.append(hi)
-    return np.concatenate(found) if found else np.array([])
+    k, c = np.nonzero(before[1:] != before[:-1])
+    lo, hi, own, each = grid[k], grid[k + 1], before[k, c], np.arange(len(k))
+    for _ in range(48 if len(k) else 0):
+        middle = 0.5 * (lo + hi)
+        same = ranks(middle)[each, c] == own
+        lo, hi = np.where(same, middle, lo), np.where(same, hi, middle)
+    return hi
 
 
 def _ligand_channels(plane: Plane) -> list[str]:
@@ -191,5 +216,6 @@ def _clip(part, ends: np.ndarray, level: np.ndarray, slope: float, label: tuple)
             # leaving: the new edge runs along the cut; entering: the old edge goes on
             names.append(label if inside[k] else labels[k])
     kept_points = np.array(kept)
-    area = 0.5 * abs(np.dot(kept_points[:, 0], np.roll(kept_points[:, 1], 1)) - np.dot(kept_points[:, 1], np.roll(kept_points[:, 0], 1)))
+    x, y = kept_points.T
+    area = 0.5 * abs(np.dot(x, np.roll(y, 1)) - np.dot(y, np.roll(x, 1)))
     return None if len(kept) < 3 or area < 1e-14 else (kept_points, names)

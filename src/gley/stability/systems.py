@@ -82,7 +82,7 @@ def _prevailing(members: np.ndarray, q: np.ndarray, slopes: np.ndarray) -> int:
 
 @dataclass(frozen=True)
 class Lines:
-    """Lines of n samples: `alpha` (n, J) and `beta` (J,) of the candidates; `q` (n, S) and `slopes` (S,) of the members."""
+    """Lines of n samples: candidates' `alpha` (n, J) and `beta` (J,); members' `q` (n, S) and `slopes` (S,)."""
 
     system: System
     q: np.ndarray

@@ -56,9 +56,8 @@ def coefficients(members) -> np.ndarray:
         charge = -float(item.charge**2) if item.dissolved else 0.0
         neutral = -0.1 if item.dissolved and item.charge == 0 else 0.0
         scale = R_J_MOL_K * LN10
-        columns.append(
-            [item.logK, item.dH_J_mol / scale, item.dCp_J_mol_K / scale, -float(item.h), float(item.n_O), charge, neutral]
-        )
+        heat, capacity = item.dH_J_mol / scale, item.dCp_J_mol_K / scale
+        columns.append([item.logK, heat, capacity, -float(item.h), float(item.n_O), charge, neutral])
     return np.array(columns).T.reshape(len(FEATURES), -1)
 
 
