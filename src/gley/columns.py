@@ -59,8 +59,8 @@ def columns(table: str) -> MappingProxyType:
     found = {}
     for row in _rows("columns.csv"):
         if row["table"] == table:
-            bounds = [float(row[side]) if row[side] else None for side in ("min", "max")]
-            found[row["column"]] = Column(table, row["column"], row["dtype"], row["unit"], *bounds, row["meaning"])
+            low, high = (float(row[side]) if row[side] else None for side in ("min", "max"))
+            found[row["column"]] = Column(table, row["column"], row["dtype"], row["unit"], low, high, row["meaning"])
     if not found:
         message = f"no table '{table}' in the vocabulary"
         raise KeyError(message)

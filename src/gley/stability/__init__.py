@@ -4,12 +4,13 @@ Imports neither drawing nor file readers; takes tables and arrays and returns ne
 """
 
 from gley.stability.assign import assign, measured_elements
-from gley.stability.chart import chart
+from gley.stability.chart import chart, chart_at
 from gley.stability.chart_types import Boundary, Chart, Conditions, Field
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
-from gley.stability.water import water_lines
+from gley.stability.reference import reference
+from gley.stability.water import beyond_water, water_lines
 
 __all__ = [
-    "CHART_ONLY", "OFFERED", "Boundary", "Chart", "Conditions", "Field", "assign", "chart", "check_names",
-    "measured_elements", "species", "water_lines",
+    "CHART_ONLY", "OFFERED", "Boundary", "Chart", "Conditions", "Field", "assign", "beyond_water", "chart", "chart_at",
+    "check_names", "measured_elements", "reference", "species", "water_lines",
 ]  # fmt: skip

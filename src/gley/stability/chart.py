@@ -84,6 +84,15 @@ def chart(
     return Chart(element, stated, window, fields, lines, water)
 
 
+def chart_at(element: str, conditions: Conditions, window: tuple[float, float, float, float] = WINDOW) -> Chart:
+    """The chart at conditions as another chart or a sample holds them."""
+    return chart(
+        element, conditions.total_mol_L, conditions.temperature_C, ionic_strength_M=conditions.ionic_strength_M,
+        ligands=conditions.ligands_mol_L, solids=conditions.solids, with_names=conditions.with_names,
+        without_names=conditions.without_names, window=window,
+    )  # fmt: skip
+
+
 def _check(element, total, temperature, strength, ligands, solids, window) -> None:
     """Refuse what can't be computed, all faults at once."""
     known = (*OFFERED, *CHART_ONLY)

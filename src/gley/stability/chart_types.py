@@ -108,9 +108,7 @@ class Chart:
     def from_dict(cls, data: Mapping[str, Any]) -> "Chart":
         """A chart from what `as_dict` gave."""
         words = dict(data["conditions"])
-        conditions = Conditions(
-            with_names=tuple(words.pop("with")), without_names=tuple(words.pop("without")), **words
-        )
+        conditions = Conditions(with_names=tuple(words.pop("with")), without_names=tuple(words.pop("without")), **words)
         fields = tuple(
             Field(**{**item, "polygons": tuple(tuple(np.array(ring) for ring in rings) for rings in item["polygons"])})
             for item in data["fields"]

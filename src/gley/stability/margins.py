@@ -18,7 +18,7 @@ _SHORTEST_STEP = 0.01
 def along_pe(
     target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, field: np.ndarray, choice: Choice
 ) -> tuple[np.ndarray, np.ndarray]:
-    """Signed change of pe to the nearest other field (+ = pe must rise; NaN beyond reach) and its member (−1 = none)."""
+    """Signed change of pe to the nearest other field (+ = pe must rise; NaN beyond reach), its member (−1 = none)."""
     up, above = _walk(target, bath, pe, log_total, field, choice, +1)
     down, below = _walk(target, bath, pe, log_total, field, choice, -1)
     rising = up <= down

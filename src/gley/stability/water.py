@@ -97,20 +97,29 @@ def fractions(channel: str, X: np.ndarray) -> dict[str, np.ndarray]:
     return {item.name: shares[:, i] for i, item in enumerate(pool(channel))}
 
 
-def water_lines(temperature_C: float, pH) -> dict[str, np.ndarray]:
-    """E in V of water's two limits at each pH: O2 at 1 bar and H2 at 1 bar.
+def water_lines(temperature_C, pH) -> dict[str, np.ndarray]:
+    """E in V of water's two limits at each pH (arrays (n,) or scalars): O2 at 1 bar and H2 at 1 bar.
 
     O2(g) + 4 H^+ + 4 e^- = 2 H2O and 2 H^+ + 2 e^- = H2(g), from the table's O2(g), H2(g) and H2O.
     """
-    pH = np.asarray(pH, float)
-    X = features(np.zeros_like(pH), temperature_C, 0.0)
-    slope = nernst_slope_mV(temperature_C) / 1000
+    pH, t = np.broadcast_arrays(*(np.atleast_1d(np.asarray(x, float)) for x in (pH, temperature_C)))
+    X = features(np.zeros_like(pH), t, 0.0)
     lines = {}
     for name, gas in (("O2/H2O", "O2(g)"), ("H2O/H2", "H2(g)")):
         item = species()[gas]
         log_K = (X @ coefficients([item]))[:, 0]
-        lines[name] = slope * (log_K / item.e - pH * item.h / item.e)
+        lines[name] = nernst_slope_mV(t) / 1000 * (log_K - pH * item.h) / item.e
     return lines
+
+
+def beyond_water(pH, Eh_mV, temperature_C) -> np.ndarray:
+    """How far in mV a potential lies outside water's stability at 1 bar: + above O2/H2O, − below H2O/H2, 0 within.
+
+    Arrays (n,) of pH, Eh in mV and temperature in °C; NaN where one is missing.
+    """
+    lines = water_lines(temperature_C, pH)
+    Eh = np.asarray(Eh_mV, float)
+    return np.maximum(Eh - 1000 * lines["O2/H2O"], 0.0) + np.minimum(Eh - 1000 * lines["H2O/H2"], 0.0)
 
 
 def ionic_strength(frame: pd.DataFrame, balance_percent: float, default_M: float) -> tuple[np.ndarray, np.ndarray]:

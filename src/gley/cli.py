@@ -1,0 +1,333 @@
+"""The command line: parses, calls the library, prints. The only module that prints or exits.
+
+stdout carries the answer, stderr notes and progress. Exit: 0 done (warnings too), 1 failure, 2 usage, 3 the data have
+an error. Heavy imports happen inside the commands, so that help is quick.
+"""
+
+import json
+import sys
+from collections.abc import Callable, Sequence
+from pathlib import Path
+from typing import Annotated, Any
+
+import typer
+
+from gley import __version__
+from gley.errors import GleyError, UsageError
+
+# the parser's own complaint about a call; typer shows its class under another name from release to release
+_ParserError: type[Exception] = next(item for item in typer.BadParameter.__mro__ if item.__name__ == "ClickException")
+
+DATA_ERROR = 3
+_SHOWN = 25
+
+app = typer.Typer(
+    name="gley", no_args_is_help=True, add_completion=False, rich_markup_mode=None, pretty_exceptions_enable=False,
+    help="From a field survey of ORP and pH to redox evidence: Eh, stability fields, E-pH charts, maps, tables.",
+    epilog="Example: gley run survey.xlsx --out assessment",
+)  # fmt: skip
+
+Surveys = Annotated[
+    list[Path], typer.Argument(help="Survey files: .xlsx, .csv, .tsv, .txt; field and laboratory together.")
+]
+SettingsFile = Annotated[
+    Path | None, typer.Option("--settings", help="Settings file (TOML); templates/survey.toml shows all.")
+]
+Electrode = Annotated[str, typer.Option(help="Reference electrode where the file names none, e.g. 'Ag/AgCl, 3 M KCl'.")]
+Crs = Annotated[
+    str, typer.Option(help="Coordinate reference system, e.g. EPSG:25832; 'none' = no maps and GIS layers.")
+]
+AsJson = Annotated[bool, typer.Option("--json", help="Print the answer as JSON.")]
+Overwrite = Annotated[bool, typer.Option("--overwrite", help="Replace what is there.")]
+Out = Annotated[Path | None, typer.Option("--out", help="Folder to write to.")]
+
+
+class _State:
+    """What the two flags that every command takes were set to."""
+
+    debug = False
+    quiet = False
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        _print(f"gley {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _flags(
+    debug: Annotated[bool, typer.Option("--debug", help="Show the traceback of a fault (any command).")] = False,
+    quiet: Annotated[bool, typer.Option("--quiet", help="No notes and progress on stderr (any command).")] = False,
+    version: Annotated[
+        bool, typer.Option("--version", help="Show the version.", is_eager=True, callback=_version)
+    ] = False,
+) -> None:
+    _State.debug, _State.quiet = debug, quiet
+
+
+@app.command()
+def run(
+    surveys: Surveys,
+    out: Out = None,
+    settings: SettingsFile = None,
+    electrode: Electrode = "",
+    crs: Crs = "",
+    elements: Annotated[str, typer.Option(help="Elements to assign, e.g. As,Fe,Mn; default the measured ones.")] = "",
+    solids: Annotated[str, typer.Option(help="Solid set: fresh, aged or none; default as in the settings.")] = "",
+    overwrite: Overwrite = False,
+    as_json: AsJson = False,
+) -> None:
+    """Do the whole job: Eh, stability fields, redox process, charts, maps, tables, report.
+
+    Example: gley run survey.xlsx --out assessment
+    """
+    from gley import pipeline, wording
+
+    chosen = _settings(settings, electrode, crs, elements=elements, solids=solids)
+    folder = out or Path(f"{surveys[0].stem}_redox")
+    _tell(f"Reading {', '.join(str(path) for path in surveys)}")
+    pipeline.refuse_folder(folder, overwrite)
+    result = pipeline.run(list(surveys), chosen, command=_command())
+    _tell_findings(result.findings)
+    _tell(f"Writing {folder}")
+    files = pipeline.write(result, folder, overwrite)
+    _answer(as_json, lambda: wording.run_record(result, folder, files), lambda: wording.run_summary(result, folder))
+    _exit_on_data_error(result.findings)
+
+
+@app.command()
+def check(
+    surveys: Surveys,
+    settings: SettingsFile = None,
+    electrode: Electrode = "",
+    crs: Crs = "",
+    as_json: AsJson = False,
+) -> None:
+    """Read the survey and convert ORP to Eh; list every finding with its cell. Writes nothing.
+
+    Example: gley check survey.xlsx
+    """
+    from gley import pipeline, wording
+    from gley.survey import read_survey
+
+    chosen = _settings(settings, electrode, crs)
+    survey = read_survey(list(surveys), chosen)
+    eh, findings = pipeline.check(survey, chosen)
+    _answer(
+        as_json, lambda: wording.check_record(survey, eh, findings), lambda: wording.check_text(survey, eh, findings)
+    )
+    _exit_on_data_error(findings)
+
+
+@app.command(context_settings={"ignore_unknown_options": True})
+def eh(
+    readings: Annotated[list[str], typer.Argument(help="ORP readings in mV; negative ones too.")],
+    electrode: Annotated[str, typer.Option(help="Reference electrode, e.g. 'Ag/AgCl, 3 M KCl'.")] = "",
+    temperature: Annotated[float | None, typer.Option(help="Temperature in °C.")] = None,
+    as_json: AsJson = False,
+) -> None:
+    """Convert ORP readings to Eh on the hydrogen scale.
+
+    Example: gley eh 215 -120 --electrode "Ag/AgCl, 3 M KCl" --temperature 10
+    """
+    from gley import wording
+    from gley.probe import convert
+
+    values = [_number(text, "ORP reading in mV") for text in readings]
+    rows = convert(values, electrode, temperature)
+    _answer(as_json, lambda: {"readings": rows}, lambda: wording.eh_text(rows))
+
+
+@app.command()
+def chart(
+    element: Annotated[str, typer.Argument(help="Element: Fe, Mn, As, S, N or C.")],
+    total: Annotated[str, typer.Option(help="Dissolved total in mol/L; several as 1e-6,1e-4.")] = "1e-6",
+    temperature: Annotated[str, typer.Option(help="Temperature in °C; several as 25,5.")] = "25",
+    ligand: Annotated[
+        list[str] | None, typer.Option(metavar="NAME=TOTAL", help="Ligand total in mol/L; repeat for more.")
+    ] = None,
+    solids: Annotated[str, typer.Option(help="Solid set: fresh, aged or none.")] = "fresh",
+    with_names: Annotated[
+        list[str] | None, typer.Option("--with", metavar="NAME", help="Add a species or solid by name.")
+    ] = None,
+    without: Annotated[
+        list[str] | None, typer.Option("--without", metavar="NAME", help="Leave a species or solid out.")
+    ] = None,
+    ionic_strength: Annotated[float, typer.Option(help="Ionic strength in mol/L.")] = 0.010,
+    out: Out = None,
+    overwrite: Overwrite = False,
+    as_json: AsJson = False,
+) -> None:
+    """Draw one element's E-pH chart without a survey, over the whole plane.
+
+    Example: gley chart Fe --total 1e-5 --ligand C=2e-3 --out charts
+    """
+    from gley import stability, wording
+    from gley.delivery import write_charts
+
+    ligands = dict(_pair(text) for text in ligand or [])
+    charts = [
+        stability.chart(
+            element, amount, warmth, ionic_strength_M=ionic_strength, ligands=ligands, solids=solids,
+            with_names=tuple(with_names or ()), without_names=tuple(without or ()),
+        )
+        for amount in _numbers(total, "--total in mol/L")
+        for warmth in _numbers(temperature, "--temperature in °C")
+    ]  # fmt: skip
+    files = write_charts(charts, out, overwrite) if out else []
+    records = [item.as_dict() for item in charts]
+    _answer(
+        as_json, lambda: records[0] if len(records) == 1 else {"charts": records}, lambda: wording.chart_text(charts)
+    )
+    for path in files:
+        _tell(f"Wrote {path}")
+
+
+@app.command()
+def data(
+    element: Annotated[str | None, typer.Argument(help="Only this element's species.")] = None,
+    as_json: AsJson = False,
+) -> None:
+    """List species, solid sets and reference electrodes in use, with their sources.
+
+    Example: gley data Fe
+    """
+    from gley import wording
+
+    record = wording.data_record(element)
+    _answer(as_json, lambda: record, lambda: wording.data_text(record))
+
+
+@app.command()
+def sheet(
+    file: Annotated[Path, typer.Argument(help="Workbook to make (.xlsx).")],
+    overwrite: Overwrite = False,
+) -> None:
+    """Make a blank field workbook to take to site.
+
+    Example: gley sheet field.xlsx
+    """
+    from gley.probe import electrodes
+    from gley.survey import write_sheet
+
+    path = write_sheet(file, electrodes=tuple(item["name"] for item in electrodes()), overwrite=overwrite)
+    _print(f"Wrote {path}")
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run the command line and return the exit code; every error becomes one line, a cure and a code."""
+    words = list(sys.argv[1:] if argv is None else argv)
+    flags = [word for word in words if word in ("--debug", "--quiet")]
+    words = flags + [word for word in words if word not in flags] or ["--help"]
+    try:
+        return app(words, prog_name="gley", standalone_mode=False) or 0
+    except GleyError as error:
+        if _State.debug:
+            raise
+        return _fail(error.message, error.cure, 2 if isinstance(error, UsageError) else 1)
+    except _ParserError as error:
+        return _fail(error.format_message(), "`gley --help` lists commands, `gley COMMAND --help` their options.", 2)
+    except (typer.Abort, KeyboardInterrupt):
+        return _fail("stopped.", "", 1)
+    except Exception as error:
+        if _State.debug:
+            raise
+        return _fail(
+            f"a fault of the program ({type(error).__name__}: {error}).", "Please report what --debug shows.", 1
+        )
+
+
+def _fail(message: str, cure: str, code: int) -> int:
+    print(f"gley: {message}", file=sys.stderr)
+    if cure:
+        print(f"      {cure}", file=sys.stderr)
+    return code
+
+
+def _print(text: str) -> None:
+    print(text)
+
+
+def _answer(as_json: bool, record: Callable[[], Any], text: Callable[[], str]) -> None:
+    """The answer on stdout, in one of its two forms; NaN becomes null."""
+    _print(json.dumps(_plain(record()), ensure_ascii=False, indent=1, allow_nan=False) if as_json else text())
+
+
+def _plain(value: Any) -> Any:
+    """JSON-ready copy: NaN and infinities as null, numpy scalars as Python ones."""
+    if isinstance(value, dict):
+        return {str(key): _plain(part) for key, part in value.items()}
+    if isinstance(value, (list, tuple)):
+        return [_plain(part) for part in value]
+    if hasattr(value, "item"):
+        value = value.item()
+    if isinstance(value, float) and (value != value or value in (float("inf"), float("-inf"))):
+        return None
+    return value if isinstance(value, (str, int, float, bool, type(None))) else str(value)
+
+
+def _tell(text: str) -> None:
+    """A note on stderr."""
+    if not _State.quiet:
+        print(text, file=sys.stderr)
+
+
+def _tell_findings(findings) -> None:
+    """Errors and warnings on stderr, the first ones; the rest by number."""
+    shown = [*findings.of("error"), *findings.of("warning")]
+    for item in shown[:_SHOWN]:
+        _tell(str(item))
+    if len(shown) > _SHOWN:
+        _tell(f"… and {len(shown) - _SHOWN} more warnings, all in findings.csv")
+
+
+def _exit_on_data_error(findings) -> None:
+    if findings.of("error"):
+        raise typer.Exit(DATA_ERROR)
+
+
+def _settings(path: Path | None, electrode: str, crs: str, elements: str = "", solids: str = ""):
+    """Settings from the file with the options of the command over it."""
+    from gley.settings import load
+
+    groups: dict[str, dict[str, Any]] = {}
+    if electrode:
+        groups["probe"] = {"electrode": electrode}
+    if crs:
+        groups["survey"] = {"crs": crs}
+    stability: dict[str, Any] = {}
+    if elements:
+        stability["elements"] = [part.strip() for part in elements.split(",") if part.strip()]
+    if solids:
+        stability["solids"] = solids
+    return load(path, **groups, **({"stability": stability} if stability else {}))
+
+
+def _number(text: str, what: str) -> float:
+    try:
+        return float(text.replace("−", "-"))
+    except ValueError:
+        message = f"'{text}' isn't a number ({what})."
+        raise UsageError(message, "Decimal point, no unit: 1e-6, -120, 25.") from None
+
+
+def _numbers(text: str, what: str) -> list[float]:
+    return [_number(part.strip(), what) for part in text.split(",")]
+
+
+def _pair(text: str) -> tuple[str, float]:
+    name, sign, amount = text.partition("=")
+    if not sign:
+        message = f"--ligand '{text}' isn't NAME=TOTAL."
+        raise UsageError(message, "Write it like S=1e-3 (mol/L).")
+    return name.strip(), _number(amount.strip(), f"total of {name} in mol/L")
+
+
+def _command() -> str:
+    """The command line for the stamp, without the path of the program."""
+    return " ".join(["gley", *sys.argv[1:]])
+
+
+if __name__ == "__main__":
+    sys.exit(main())

@@ -1,0 +1,150 @@
+"""The whole job in order: survey, Eh, fields, evidence, places, charts. `run` writes nothing, `write` everything."""
+
+import time
+from collections.abc import Sequence
+from pathlib import Path
+
+import numpy as np
+import pandas as pd
+
+from gley import delivery, evidence, probe, site, stability
+from gley.charts import chart_sheets, with_background
+from gley.columns import amount_column
+from gley.delivery import Result
+from gley.findings import Findings, Place
+from gley.settings import Settings
+from gley.survey import Survey, read_survey
+
+IMPLAUSIBLE_mV = 100.0
+"""A potential further than this outside water's stability can't be a reading of a water at rest (common practice)."""
+
+_SHOWN_NAMES = 6
+
+
+def run(
+    survey: Survey | str | Path | Sequence[str | Path], settings: Settings | None = None, command: str = ""
+) -> Result:
+    """From a survey to everything a report needs; nothing is written.
+
+    Parameters
+    ----------
+    survey : Survey, path or sequence of paths
+        What `read_survey` gave, or the files to read.
+    settings : Settings, optional
+        All choices; defaults otherwise.
+    command : str
+        The command line, for the stamp.
+
+    Raises
+    ------
+    GleyError
+        When a file can't be read, no electrode is named, or the coordinates have no reference system.
+    """
+    settings = settings or Settings()
+    clock = _Clock()
+    if not isinstance(survey, Survey):
+        paths = [survey] if isinstance(survey, (str, Path)) else list(survey)
+        survey = read_survey(paths, settings)
+    clock.lap("survey")
+    findings = Findings(survey.findings)
+    eh = probe.to_Eh(survey, settings, findings)
+    waters = engine_table(survey, eh)
+    water_line_findings(waters, survey, findings)
+    clock.lap("probe")
+    # a map that can't be drawn is refused before the long part of the work
+    places = site.places(survey, settings, findings)
+    elements, settings = choose_elements(survey, settings, findings)
+    fields = stability.assign(waters, elements, settings)
+    _status_findings(fields, findings)
+    clock.lap("stability")
+    process = evidence.process_table(survey.amounts, settings)
+    charts = chart_sheets(waters, fields, elements, settings)
+    fields = with_background(fields, charts, findings)
+    clock.lap("charts")
+    return Result(
+        survey=survey, settings=settings, eh=eh, fields=fields, evidence=process, places=places, charts=charts,
+        findings=findings, elements=elements, timing=clock.laps, command=command,
+    )  # fmt: skip
+
+
+def write(result: Result, folder: str | Path, overwrite: bool = False) -> list[Path]:
+    """Write tables, GIS layers, charts, maps, report and stamp to a folder, whole or not at all.
+
+    Raises
+    ------
+    GleyError
+        When the folder exists and `overwrite` isn't set, isn't one of ours, or can't be written.
+    """
+    return delivery.write(result, Path(folder), overwrite)
+
+
+def check(survey: Survey, settings: Settings) -> tuple[pd.DataFrame, Findings]:
+    """Survey, probe and water's lines only: Eh of every sample and all findings."""
+    findings = Findings(survey.findings)
+    eh = probe.to_Eh(survey, settings, findings)
+    water_line_findings(engine_table(survey, eh), survey, findings)
+    return eh, findings
+
+
+def engine_table(survey: Survey, eh: pd.DataFrame) -> pd.DataFrame:
+    """Samples, Eh and amounts side by side: what `stability.assign` takes."""
+    samples = survey.samples.drop(columns=[name for name in survey.samples if name in eh])
+    table = pd.concat([samples, eh, survey.amounts], axis=1)
+    table["temperature_C"] = eh["temperature_used_C"]
+    return table
+
+
+def water_line_findings(waters: pd.DataFrame, survey: Survey, findings: Findings) -> None:
+    """Say which potentials no water at rest can have."""
+    beyond = stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
+    for row in np.flatnonzero(np.abs(beyond) > IMPLAUSIBLE_mV):
+        sample = waters.loc[row]
+        column = "ORP_mV" if pd.notna(sample["ORP_mV"]) else "Eh_given_mV"
+        where = survey.origin.place(row, column)
+        findings.add(
+            "stability.outside_water", Place(where.file, where.sheet, where.cell, sample["sample"]),
+            f"{sample['Eh_mV']:.0f}", pH=f"{sample['pH']:.2f}", beyond=f"{abs(beyond[row]):.0f}",
+            side="above" if beyond[row] > 0 else "below",
+        )  # fmt: skip
+
+
+def choose_elements(survey: Survey, settings: Settings, findings: Findings) -> tuple[tuple[str, ...], Settings]:
+    """The elements to assign, and the settings with what had to be assumed for them."""
+    stated = settings.stability
+    elements = tuple(stated.elements) or stability.measured_elements(survey.amounts)
+    metals = [key for key in ("Fe", "Mn") if amount_column(key) in survey.amounts or key in stated.assumed_mol_L]
+    soil = survey.samples["depth_cm"].notna().any()
+    if soil and not metals:
+        total = stated.assumed_soil_mol_L
+        findings.add("stability.assumed_total", value=f"{total:g}")
+        assumed = {**stated.assumed_mol_L, "Fe": total, "Mn": total}
+        return elements or ("Fe", "Mn"), settings.replace(stability={"assumed_mol_L": assumed})
+    if not elements:
+        findings.add("stability.nothing_to_assign", value=", ".join(stability.OFFERED))
+    return elements, settings
+
+
+def _status_findings(fields: pd.DataFrame, findings: Findings) -> None:
+    """One finding per element and status, with the samples it concerns."""
+    for element, part in fields.groupby("element", sort=False):
+        phrases = part.assign(phrase=part["status"].str.split("; ")).explode("phrase")
+        for phrase, group in phrases.groupby("phrase", sort=False):
+            if phrase == "ok":
+                continue
+            names = list(group["sample"])
+            shown = ", ".join(names[:_SHOWN_NAMES]) + (" …" if len(names) > _SHOWN_NAMES else "")
+            rule = "stability.not_assigned" if str(phrase).startswith("not assigned") else "stability.status"
+            findings.add(rule, value=phrase, element=element, count=len(names), total=len(part), names=shown)
+
+
+class _Clock:
+    """Seconds spent per room."""
+
+    def __init__(self) -> None:
+        self.laps: dict[str, float] = {}
+        self._last = time.perf_counter()
+
+    def lap(self, name: str) -> None:
+        now = time.perf_counter()
+        self.laps[name] = round(now - self._last, 3)
+        self._last = now
