@@ -77,7 +77,8 @@ def eh_text(rows: list[dict[str, Any]]) -> str:
     """One line per reading, then the source of the half-cell."""
     lines = [
         f"{row['orp_mV']:g} mV against {row['electrode']} at {row['temperature_C']:g} °C:"
-        f" reference {row['reference_mV']:.0f} mV, Eh {row['Eh_mV']:.0f} mV (sd {row['Eh_sd_mV']:.0f} mV), pe {row['pe']:.2f}"
+        f" reference {row['reference_mV']:.0f} mV,"
+        f" Eh {row['Eh_mV']:.0f} mV (sd {row['Eh_sd_mV']:.0f} mV), pe {row['pe']:.2f}"
         for row in rows
     ]
     return "\n".join([*lines, *dict.fromkeys(f"Source: {row['source']}" for row in rows)])

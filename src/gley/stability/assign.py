@@ -12,7 +12,7 @@ from gley.settings import Settings
 from gley.stability import certainty, margins
 from gley.stability.data import CHART_ONLY, OFFERED, check_names
 from gley.stability.solve import Choice, Solved, solve
-from gley.stability.systems import System
+from gley.stability.systems import System, away_from_25
 from gley.stability.waters import LIGAND_INPUTS, MAX_IONIC_STRENGTH_M, Waters, waters
 
 BLOCK = 8192
@@ -127,6 +127,8 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
         no_sulfide = np.isnan(ready.ligands["S(-II)"])
         say(ready.tied & no_sulfide, "sulfide computed")
         say(no_sulfide & ~ready.tied, "ligand not measured: sulfide")
+    for name in [item.name for item in target.members if item.only_at_25]:
+        say(away_from_25(ready.X), f"{name} left out: known at 25 °C only")
     strong = ready.ionic_strength_M > MAX_IONIC_STRENGTH_M
     say(strong, f"ionic strength above {MAX_IONIC_STRENGTH_M:g} M: activities uncertain")
     return status

@@ -67,6 +67,12 @@ def chart(
     volt = nernst_slope_mV(temperature_C) / 1000.0
     inside = (window[0], window[1], window[2] / volt, window[3] / volt)
     target = choice.system(element)
+    unknown = [item.name for item in target.members if item.only_at_25]
+    if unknown and abs(temperature_C - 25.0) > 2.0:
+        message = (
+            f"{', '.join(unknown)}: nothing tells how it changes with temperature, {temperature_C:g} °C is too far."
+        )
+        raise UsageError(message, "Draw the chart at 23 to 27 °C, or leave it out.")
     bath_at = _bath(ligands, temperature_C, ionic_strength_M)
     plane = cut(Plane(target, choice, bath_at, float(np.log10(total_mol_L))), inside)
     made = pieces(plane, *inside[2:])

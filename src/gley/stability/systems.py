@@ -10,9 +10,18 @@ from functools import lru_cache
 
 import numpy as np
 
+from gley.constants import T0_K
 from gley.stability.data import Species, select
 from gley.stability.environment import Environment
-from gley.stability.water import coefficients, log_sum
+from gley.stability.water import FEATURES, coefficients, log_sum
+
+
+_NEAR_25 = 2.01 / T0_K**2
+
+
+def away_from_25(X: np.ndarray) -> np.ndarray:
+    """Which samples (n,) are further than 2 °C from 25 °C, where a species without temperature data isn't used."""
+    return np.abs(X[:, FEATURES.index("1/T0 − 1/T")]) > _NEAR_25
 
 
 @dataclass(frozen=True)
@@ -30,10 +39,13 @@ class System:
     nu: np.ndarray
     candidates: tuple[np.ndarray, ...]
     solid: np.ndarray
+    only_at_25: np.ndarray
 
     def terms(self, X: np.ndarray, environment: Environment) -> tuple[np.ndarray, np.ndarray]:
         """log m of each member at pe = 0 and unit element activity (n, S), −inf where it can't be, and d/dpe (S,)."""
         q = X @ self.matrix
+        if self.only_at_25.any():
+            q[np.ix_(away_from_25(X), self.only_at_25)] = -np.inf
         slopes = self.slopes.copy()
         for c, channel in enumerate(self.channels):
             uses = np.flatnonzero(self.counts[:, c])
@@ -128,4 +140,5 @@ def build(element: str, members: Iterable[Species]) -> System:
         slopes=np.array([-float(item.e) for item in members]), counts=counts.reshape(len(members), len(channels)),
         nu=np.array([float(item.nu) for item in members]), candidates=candidates,
         solid=np.array([not members[found[0]].dissolved for found in candidates]),
+        only_at_25=np.array([item.only_at_25 for item in members]),
     )  # fmt: skip
