@@ -15,7 +15,6 @@ from gley.stability.data import Species, select
 from gley.stability.environment import Environment
 from gley.stability.water import FEATURES, coefficients, log_sum
 
-
 _NEAR_25 = 2.01 / T0_K**2
 
 
