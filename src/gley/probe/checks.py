@@ -1,7 +1,7 @@
 """Check solutions: how far the probe was off, and what to do about it.
 
-δ = Eh_solution(T) − reading − E_ref(T) is what a perfect probe would have had to be raised by. Between two checks of the
-same probe and day it is taken linear in time, for one it is constant.
+δ = Eh_solution(T) − reading − E_ref(T) is what a perfect probe would have had to be raised by. Between two checks of one
+probe and day it is taken linear in time; a single one is constant.
 """
 
 from collections.abc import Callable
@@ -30,7 +30,7 @@ class Check:
 
 @dataclass(frozen=True)
 class Correction:
-    """What checks give the samples (n,): δ to apply in mV, half the drift between checks in mV, whether a check counts."""
+    """What checks give the samples (n,): δ to apply and half the drift between checks in mV, whether a check counts."""
 
     delta_mV: np.ndarray
     drift_mV: np.ndarray

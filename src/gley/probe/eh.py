@@ -1,4 +1,4 @@
-"""Eh of every sample of a survey: which electrode, which temperature, which check, how sure, in words a reviewer can follow."""
+"""Eh of every sample of a survey: which electrode, temperature and check, how sure, in words a reviewer follows."""
 
 import numpy as np
 import pandas as pd
@@ -12,8 +12,8 @@ from gley.probe.electrodes import FILL_UNKNOWN, HYDROGEN, OWN_OFFSET, find_elect
 from gley.settings import ProbeSettings, Settings
 
 POISED_mol_L = 1e-5
-"""Dissolved iron or sulfide from which platinum settles on the water's own couple: the exchange-current rule of Morris &
-Stumm 1967, about 1e-5 M (from memory)."""
+"""Dissolved iron or sulfide from which platinum settles on the water's own couple: the exchange-current rule of
+Morris & Stumm 1967, about 1e-5 M (from memory)."""
 
 _COMMON_CHECKED_mV = 5.0  # what stays common to a day's readings after a check: the window called good
 _COMMON_UNCHECKED_mV = 15.0  # and without one: the window up to which a check would have been applied

@@ -1,4 +1,4 @@
-"""Reference half-cells against the hydrogen electrode: the table, its temperature range, and names as people write them."""
+"""Reference half-cells against the hydrogen electrode: the table, its range, and names as people write them."""
 
 import csv
 import re
@@ -43,7 +43,7 @@ class Curve:
 
 
 def read_curves(file: str, name: str, value: str) -> MappingProxyType:
-    """Curves of a table of the room by name; the worst grade and the weakest reading of a curve's points stand for it."""
+    """Curves of a table of the room by name; the worst grade of a curve's points stands for it."""
     rows = list(csv.DictReader((files("gley.probe") / file).read_text(encoding="utf-8").splitlines()))
     found = {}
     for key in dict.fromkeys(row[name] for row in rows):
