@@ -15,12 +15,12 @@ _MICRO = str.maketrans({"μ": "u", "µ": "u", "−": "-", "–": "-", "²": "2",
 _SPELLINGS: dict[str, tuple[str, float]] = {
     "g/l": ("mass", 1.0), "mg/l": ("mass", 1e-3), "ug/l": ("mass", 1e-6), "ng/l": ("mass", 1e-9),
     "mg/dm3": ("mass", 1e-3), "ug/dm3": ("mass", 1e-6), "g/m3": ("mass", 1e-3), "mg/m3": ("mass", 1e-6),
-    "ppm": ("mass", 1e-3), "ppb": ("mass", 1e-6), "mg/kg": ("mass", 1e-3), "ug/kg": ("mass", 1e-6),
+    "ppm": ("mass", 1e-3), "ppb": ("mass", 1e-6), "mg/kg": ("solid", 1e-3), "ug/kg": ("solid", 1e-6),
     "mol/l": ("amount", 1.0), "mmol/l": ("amount", 1e-3), "umol/l": ("amount", 1e-6), "nmol/l": ("amount", 1e-9),
     "m": ("length", 1.0), "cm": ("length", 1e-2), "mm": ("length", 1e-3), "ft": ("length", 0.3048),
     "eq/l": ("charge", 1.0), "meq/l": ("charge", 1e-3), "ueq/l": ("charge", 1e-6), "mval/l": ("charge", 1e-3),
     "v": ("potential", 1e3), "volt": ("potential", 1e3), "volts": ("potential", 1e3), "mv": ("potential", 1.0),
-    "us/cm": ("conductivity", 1.0), "ms/cm": ("conductivity", 1e3), "ms/m": ("conductivity", 10.0),
+    "us/cm": ("conductivity", 1.0), "micros/cm": ("conductivity", 1.0), "ms/cm": ("conductivity", 1e3), "ms/m": ("conductivity", 10.0),
     "s/m": ("conductivity", 1e4), "ds/m": ("conductivity", 1e3), "umho/cm": ("conductivity", 1.0),
     "umhos/cm": ("conductivity", 1.0), "s/cm": ("conductivity", 1e6),
     "c": ("temperature", 1.0), "degc": ("temperature", 1.0), "f": ("fahrenheit", 1.0), "degf": ("fahrenheit", 1.0),
@@ -64,7 +64,7 @@ def recognise(text: str | None) -> Unit | None:
 
 def _split_basis(text: str) -> tuple[str, str]:
     """`mg/L as N` → (`mg/L`, `N`); `mg NO3/L` → (`mg/L`, `NO3`). A basis that isn't a formula stays in the head."""
-    found = re.match(r"^(\S+?/\s*[lL]|ppm|ppb|\S+/kg)\s*(?:-|as)?\s*\(?([A-Z][A-Za-z0-9()]*)\)?$", text)
+    found = re.match(r"^(\S+?/\s*[lL]|ppm|ppb|\S+/kg)\s*\(?(?:-|as)?\s*\(?([A-Z][A-Za-z0-9()]*)\)?\)?$", text)
     if not found:
         swapped = re.match(r"^([mun]?(?:g|mol))\s+([A-Z][A-Za-z0-9()]*)\s*/\s*([lL])$", text)
         if not swapped:
