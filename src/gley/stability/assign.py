@@ -13,6 +13,7 @@ from gley.stability import certainty, margins
 from gley.stability.data import CHART_ONLY, OFFERED, check_names
 from gley.stability.solve import Choice, Solved, solve
 from gley.stability.systems import System, away_from_25
+from gley.stability.water import DIC_MIN_PH
 from gley.stability.waters import LIGAND_INPUTS, MAX_IONIC_STRENGTH_M, Waters, waters
 
 BLOCK = 8192
@@ -57,13 +58,15 @@ def assign(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | 
     choice = Choice(stated.solids, tuple(stated.with_names), tuple(stated.without_names))
     ready = waters(samples, tuple(elements), stated)
     spread = certainty.Spread.of(samples, stated)
+    if not elements:
+        return pd.DataFrame(columns=["sample", "element", *columns("fields")])
     tables = [_element_table(element, ready, spread, choice, settings) for element in elements]
     names = samples["sample"] if "sample" in samples else pd.Series(samples.index.astype(str), index=samples.index)
     for element, table in zip(elements, tables, strict=True):
         table.insert(0, "element", element)
         table.insert(0, "sample", names.to_numpy())
         table.insert(0, "row", np.arange(len(samples)))
-    joined = pd.concat(tables).sort_values(["row"], kind="stable") if tables else pd.DataFrame()
+    joined = pd.concat(tables).sort_values(["row"], kind="stable")
     return joined.drop(columns="row").reset_index(drop=True)
 
 
@@ -114,19 +117,25 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
             status[row].append(words)
 
     say(ready.assumed[element], "assumed total")
+    for value in np.unique(ready.temperature_C[ready.temperature_assumed]):
+        say(ready.temperature_assumed & (ready.temperature_C == value), f"temperature assumed: {value:g} °C")
     for channel in target.channels:
         if channel == "Fe":
             say(np.isnan(ready.totals["Fe"]), "companion not measured: Fe")
             continue
-        if channel == "S(-II)" or (channel == "S(VI)" and not np.isnan(ready.ligands["S(VI)"]).any()):
+        say(ready.assumed[channel], f"ligand assumed: {channel}")
+        if channel == "S(-II)":
             continue
         unknown = np.isnan(ready.ligands[channel])
-        say(unknown, f"ligand not measured: {LIGAND_INPUTS[channel]}")
-        say(ready.assumed[channel], f"ligand assumed: {channel.split('(')[0]}")
+        acid = ready.too_acid & unknown if channel == "C(IV)" else np.zeros(len(unknown), bool)
+        say(acid, f"inorganic carbon unknown below pH {DIC_MIN_PH:g}")
+        say(unknown & ~acid, f"ligand not measured: {LIGAND_INPUTS[channel]}")
+    no_sulfide = np.isnan(ready.ligands["S(-II)"])
     if "S(-II)" in target.channels:
-        no_sulfide = np.isnan(ready.ligands["S(-II)"])
         say(ready.tied & no_sulfide, "sulfide computed")
         say(no_sulfide & ~ready.tied, "ligand not measured: sulfide")
+    elif element == "S":
+        say(no_sulfide, "sulfide not measured: total is sulfate alone")
     for name in [item.name for item in target.members if item.only_at_25]:
         say(away_from_25(ready.X), f"{name} left out: known at 25 °C only")
     strong = ready.ionic_strength_M > MAX_IONIC_STRENGTH_M
@@ -211,11 +220,14 @@ def _limits(table, status, rows, element, target, ready: Waters, tied, choice, s
     bath = ready.bath(some, tied, LIMIT_FRACTION)
     low = solve(target, bath, ready.pe[some], ready.log_total(element, some, LIMIT_FRACTION), choice)
     for row, before, after in zip(some, solved.field[touched], low.field, strict=True):
-        if ready.limited[element][row]:
+        own = ready.limited[element][row]
+        if own:
             status[row].append(f"{element} not detected")
+        item = target.members[before]
+        held = own or any(ready.limited[name][row] for name in item.others if name in ready.limited)
         if before != after:
-            status[row].append(f"depends on limit: {target.members[before].name} or {target.members[after].name}")
-        elif not target.members[before].dissolved and ready.limited[element][row]:
+            status[row].append(f"depends on limit: {item.name} or {target.members[after].name}")
+        elif not item.dissolved and held:
             status[row].append("a limit proves no solid")
 
 

@@ -164,7 +164,7 @@ def _fields(made: list[Piece], target: System, volt: float, smallest: float) -> 
         by_name.setdefault(piece.member, []).append(shapely.polygons(piece.points * [1.0, volt]))
     found = []
     for member, parts in by_name.items():
-        joined = shapely.union_all(shapely.set_precision(parts, SNAP), grid_size=SNAP)
+        joined = shapely.union_all(parts, grid_size=SNAP)
         polygons = [_rings(part, smallest) for part in shapely.get_parts(joined) if part.area > smallest]
         if polygons:
             item = target.members[member]

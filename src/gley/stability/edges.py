@@ -19,6 +19,7 @@ SNAP = 1e-9
 """Grid on which vertices of neighbouring strips become one, in pH and V."""
 
 _ALIKE = 1e-7
+_PARALLEL = 0.35  # sine; pool sums bend an edge away from the straight line of its forms, but not by 20 degrees
 
 
 @dataclass(frozen=True)
@@ -74,9 +75,9 @@ def _largest(channel: str, X: np.ndarray) -> list[Species]:
     return [pool(channel)[k] for k in pool_terms(channel, X).argmax(axis=1)]
 
 
-def edges(pieces: list[Piece]) -> Iterator[Edge]:
-    """All edges between pieces of different name."""
-    for found in (_rival_edges(pieces), _side_edges(pieces), _fence_edges(pieces)):
+def edges(pieces: list[Piece], nodes: np.ndarray) -> Iterator[Edge]:
+    """All edges between pieces of different name; `nodes` are the strips' limits."""
+    for found in (_rival_edges(pieces), _side_edges(pieces, nodes), _fence_edges(pieces)):
         yield from (edge for edge in found if edge.a.member != edge.b.member)
 
 
@@ -105,9 +106,20 @@ def _labelled(pieces: list[Piece], word: str) -> dict[int, list[tuple[Piece, np.
     return found
 
 
-def _side_edges(pieces: list[Piece]) -> Iterator[Edge]:
-    """Edges between neighbouring strips: where the largest form of a pool changes."""
-    right, left = _labelled(pieces, "right"), _labelled(pieces, "left")
+def _sides(pieces: list[Piece], nodes: np.ndarray, side: int) -> dict[int, list[tuple[Piece, np.ndarray]]]:
+    """Edges on the left (0) or right (1) limit of each strip, those against a rival included: where a vertical line
+    runs along the limit, rounding leaves the rival no piece of its own in this strip.
+    """
+    found = _labelled(pieces, ("left", "right")[side])
+    for strip, own in _labelled(pieces, "rival").items():
+        limit = nodes[strip + side]
+        found[strip] += [(item, ends) for item, ends in own if np.abs(ends[:, 0] - limit).max() < SNAP]
+    return found
+
+
+def _side_edges(pieces: list[Piece], nodes: np.ndarray) -> Iterator[Edge]:
+    """Edges between neighbouring strips: where the largest form of a pool changes, and vertical lines."""
+    right, left = _sides(pieces, nodes, 1), _sides(pieces, nodes, 0)
     for strip, own in right.items():
         for item, ends in own:
             for other, others in left.get(strip + 1, []):
@@ -146,40 +158,61 @@ def _overlap(a: np.ndarray, b: np.ndarray) -> np.ndarray | None:
 def boundaries(pieces: list[Piece], setting: Setting, shortest: float) -> tuple[Boundary, ...]:
     """Lines between fields in pH and V, chained; those shorter than `shortest` (pH and V units) are left out."""
     groups: dict[tuple, list[np.ndarray]] = defaultdict(list)
-    reactions: dict[tuple, Reaction] = {}
+    lines: dict[tuple, Line] = {}
     volt = nernst_slope_mV(setting.temperature_C) / 1000.0
     ligands = setting.forms()
-    for edge in edges(pieces):
+    for edge in edges(pieces, setting.plane.nodes):
         options = [ligands[piece.environment][piece.strip] for piece in (edge.a, edge.b)]
-        reaction, forms = _fitting(edge, options, setting)
-        key = (*sorted((reaction.left.name, reaction.right.name)), reaction.text, forms)
-        reactions[key] = reaction
+        line = _line(edge, options, setting)
+        key = (frozenset(line.between), line.reaction.text, line.ligand_forms)
+        lines[key] = line
         groups[key].append(edge.ends * [1.0, volt])
-    return tuple(
-        _boundary(reactions[key], key[3], line, volt)
-        for key, parts in groups.items()
-        for line in _chains(parts)
-        if line.length > shortest
-    )
+    paths = [(lines[key], path) for key, parts in groups.items() for path in _chains(parts)]
+    return tuple(_boundary(line, path, volt) for line, path in paths if path.length > shortest)
 
 
-def _fitting(edge: Edge, options: list[dict[str, Species]], setting: Setting) -> tuple[Reaction, str]:
-    """The reaction whose line runs as the edge does: on a ligand's own line, one side's ligand form tells it."""
-    members = setting.plane.target.members
-    a, b = members[edge.a.member], members[edge.b.member]
-    step = edge.ends[1] - edge.ends[0]
-    best, least = None, np.inf
+@dataclass(frozen=True)
+class Line:
+    """What one line says: the two fields, the reaction that it follows, and the forms of the ligands on it."""
+
+    between: tuple[str, str]
+    reaction: Reaction
+    ligand_forms: str
+
+
+def _line(edge: Edge, options: list[dict[str, Species]], setting: Setting) -> Line:
+    """The reaction whose line runs as the edge does.
+
+    Between two fields of one ligand state that is their own reaction. Where the ligand changes its state one side's
+    form tells it, or, when the two fields meet there only because a complex of the ligand ends, the ligand's reaction.
+    """
+    a, b = (setting.plane.target.members[piece.member] for piece in (edge.a, edge.b))
+    found = []
     for forms in options:
         reaction = between(a, b, forms, setting.plane.log_total, setting.log_ligands, setting.X0)
-        # how far the reaction's line misses the direction of the edge, as an angle in (pH, pe)
-        ideal = np.array([reaction.electrons, -reaction.protons])
-        size = np.hypot(*ideal) * np.hypot(*step)
-        miss = abs(ideal[0] * step[1] - ideal[1] * step[0]) / size if size else 1.0
-        if miss < least - _ALIKE:
-            named = {c: f for c, f in forms.items() if b.others.get(c, 0) or a.others.get(c, 0)}
-            best, least = (reaction, ", ".join(sorted({shown(form) for form in named.values()}))), miss
-    assert best is not None
-    return best
+        named = {shown(form) for channel, form in forms.items() if channel in a.others or channel in b.others}
+        names = (reaction.left.name, reaction.right.name)
+        found.append((_miss(reaction, edge), Line(names, reaction, ", ".join(sorted(named)))))
+    least, line = min(found, key=lambda item: item[0])
+    if least < _PARALLEL:
+        return line
+    for channel, form in options[0].items():
+        other = options[1].get(channel, form)
+        if other.name != form.name:
+            total = setting.log_ligands[channel]
+            reaction = between(form, other, options[0], total, setting.log_ligands, setting.X0)
+            names = (a.name, b.name) if reaction.left.name == form.name else (b.name, a.name)
+            forms_text = ", ".join(sorted({shown(form), shown(other)}))
+            found.append((_miss(reaction, edge), Line(names, reaction, forms_text)))
+    return min(found, key=lambda item: item[0])[1]
+
+
+def _miss(reaction: Reaction, edge: Edge) -> float:
+    """Sine of the angle between the reaction's line and the edge, in (pH, pe)."""
+    step = edge.ends[1] - edge.ends[0]
+    ideal = np.array([reaction.electrons, -reaction.protons])
+    size = np.hypot(*ideal) * np.hypot(*step)
+    return abs(ideal[0] * step[1] - ideal[1] * step[0]) / size if size else 1.0
 
 
 def _chains(parts: list[np.ndarray]) -> list[shapely.LineString]:
@@ -189,13 +222,13 @@ def _chains(parts: list[np.ndarray]) -> list[shapely.LineString]:
     return [shapely.simplify(part, 10 * SNAP) for part in shapely.get_parts(merged)]
 
 
-def _boundary(reaction: Reaction, forms: str, line: shapely.LineString, volt: float) -> Boundary:
-    points = shapely.get_coordinates(line)
+def _boundary(line: Line, path: shapely.LineString, volt: float) -> Boundary:
+    reaction, points = line.reaction, shapely.get_coordinates(path)
     if tuple(points[0]) > tuple(points[-1]):
         points = points[::-1]
     slope, start = reaction.slope, reaction.pe_at_pH0
     return Boundary(
-        between=(reaction.left.name, reaction.right.name), ligand_forms=forms, reaction=reaction.text,
+        between=line.between, ligand_forms=line.ligand_forms, reaction=reaction.text,
         protons=reaction.protons, electrons=reaction.electrons, kind=reaction.kind,
         slope_mV_per_pH=None if slope is None else 1000 * volt * slope + 0.0,  # + 0.0: no minus zero
         E_mV_at_pH0=None if start is None else 1000 * volt * start,

@@ -10,7 +10,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from gley.stability.water import log_sum, pool, pool_terms
+from gley.stability.data import species
+from gley.stability.water import coefficients, log_sum, pool, pool_terms
 
 FIXED = ("C(IV)", "Cl(-I)", "P(V)", "Si(IV)")
 """Channels that keep their oxidation state whatever the Eh."""
@@ -72,7 +73,8 @@ def environments(X: np.ndarray, totals: Mapping[str, np.ndarray], tied: bool, su
         return [Environment("", alpha, beta, *always)]
     states = [(channel, *pool_line(channel, X, totals["S"])) for channel in SULFUR]
     if sulfur_solid:
-        states.append(("S(0)", np.where(np.isfinite(states[0][1]), 0.0, np.nan), 0.0))
+        pure = -(X @ coefficients([species()["sulfur (rhombic)"]]))[:, 0]
+        states.append(("S(0)", np.where(np.isfinite(states[0][1]), pure, np.nan), 0.0))
     found = []
     for name, level, slope in sorted(states, key=lambda state: -state[2]):
         fences = _fences(level, slope, [(a, b) for other, a, b in states if other != name])

@@ -7,10 +7,12 @@ Along pH the lines bend; steps are kept short enough that no rival can overtake 
 
 import numpy as np
 
+from gley.constants import T0_K, ZERO_C_K, nernst_slope_mV
 from gley.stability.solve import Bath, Choice, fields, locate
 from gley.stability.systems import System
+from gley.stability.water import FEATURES
 
-E_REACH_PE = 2000.0 / 54.2  # ± 2 V at 0 °C, where a unit of pe is smallest
+E_REACH_mV = 2000.0
 PH_RESOLUTION = 0.0005
 _SHORTEST_STEP = 0.01
 
@@ -23,8 +25,14 @@ def along_pe(
     down, below = _walk(target, bath, pe, log_total, field, choice, -1)
     rising = up <= down
     distance = np.where(rising, up, -down)
-    reached = np.minimum(up, down) <= E_REACH_PE
+    reached = np.minimum(up, down) <= _reach(bath.X)
     return np.where(reached, distance, np.nan), np.where(reached, np.where(rising, above, below), -1)
+
+
+def _reach(X: np.ndarray) -> np.ndarray:
+    """2 V in units of pe at the temperature of each sample."""
+    T = 1.0 / (1.0 / T0_K - X[:, FEATURES.index("1/T0 − 1/T")])
+    return E_REACH_mV / nernst_slope_mV(T - ZERO_C_K)
 
 
 def _walk(target, bath, pe, log_total, field, choice, direction) -> tuple[np.ndarray, np.ndarray]:
@@ -32,7 +40,7 @@ def _walk(target, bath, pe, log_total, field, choice, direction) -> tuple[np.nda
     found = bath.environments(target, choice)
     distance, beyond = np.full(len(pe), np.inf), np.full(len(pe), -1)
     position = pe.astype(float).copy()
-    going = np.arange(len(pe))
+    going, reach = np.arange(len(pe)), _reach(bath.X)
     for step in range(len(found) + 1):
         if not len(going):
             break
@@ -57,7 +65,7 @@ def _walk(target, bath, pe, log_total, field, choice, direction) -> tuple[np.nda
             stops = np.isfinite(crossing) & (crossing * direction <= end * direction)
             distance[rows[stops]] = np.abs(crossing - pe[rows])[stops]
             beyond[rows[stops]] = _forms(lines, here_pick, rival)[stops]
-            goes = ~stops & np.isfinite(end) & (np.abs(end - pe[rows]) <= E_REACH_PE)
+            goes = ~stops & np.isfinite(end) & (np.abs(end - pe[rows]) <= reach[rows])
             position[rows[goes]] = end[goes]
             still.append(rows[goes])
         going = np.concatenate(still) if still else np.array([], int)

@@ -81,8 +81,9 @@ def _vertical_lines(plane: Plane, nodes: np.ndarray) -> np.ndarray:
     for e, environment in enumerate(plane.environments(nodes)):
         lines = plane.lines(nodes, environment)
         i, j = np.nonzero(np.triu(lines.beta[:, None] == lines.beta[None, :], 1))
-        gap = lines.alpha[:, i] - lines.alpha[:, j]
-        k, pair = np.nonzero(gap[:-1] * gap[1:] < 0)
+        with np.errstate(invalid="ignore"):  # candidates that can't be are at infinity, their difference is none
+            gap = lines.alpha[:, i] - lines.alpha[:, j]
+            k, pair = np.nonzero(gap[:-1] * gap[1:] < 0)
         lo, hi, sign = nodes[k], nodes[k + 1], np.sign(gap[k, pair])
         for _ in range(48 if len(k) else 0):
             middle = 0.5 * (lo + hi)

@@ -39,6 +39,8 @@ class Waters:
     limited: Mapping[str, np.ndarray]
     assumed: Mapping[str, np.ndarray]
     tied: np.ndarray
+    temperature_assumed: np.ndarray
+    too_acid: np.ndarray
 
     def bath(self, rows: np.ndarray, tied: bool, scale: float = 1.0) -> Bath:
         """The waters of some rows for one treatment of sulfur; values that are limits are multiplied by `scale`."""
@@ -74,6 +76,8 @@ def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySe
     """
     pH = water._column(frame, "pH")
     temperature = water._column(frame, "temperature_C")
+    basis_T = frame.get("temperature_basis", pd.Series("", index=frame.index)).fillna("").astype(str)
+    temperature_assumed = np.isnan(temperature) | basis_T.str.startswith("assumed").to_numpy()
     temperature = np.where(np.isnan(temperature), settings.assumed_temperature_C, temperature)
     Eh = water._column(frame, "Eh_mV")
     strength, basis = water.ionic_strength(frame, settings.charge_balance_percent, settings.default_ionic_strength_M)
@@ -93,7 +97,7 @@ def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySe
         tied = ~np.isnan(ligands["S(VI)"])
     return Waters(
         pH, Eh, Eh / nernst_slope_mV(temperature), temperature, strength, basis, X,
-        totals, ligands, limited, assumed, tied,
+        totals, ligands, limited, assumed, tied, temperature_assumed, pH < water.DIC_MIN_PH,
     )  # fmt: skip
 
 
