@@ -97,10 +97,10 @@ def _ratio(amounts: pd.DataFrame) -> list[tuple[float, float] | None]:
 def _decide(known: dict[str, bool | None], ratio, stated: EvidenceSettings) -> tuple[str, str]:
     """The one answer that all completions of the unknown inputs share, else what they leave open."""
     open_keys = [key for key in _INPUTS if known[key] is None]
-    answers = {
-        _classify({key: bool(value) for key, value in {**known, **dict(zip(open_keys, guess, strict=True))}.items()}, ratio, stated)
-        for guess in product((True, False), repeat=len(open_keys))
-    }
+    answers = set()
+    for guess in product((True, False), repeat=len(open_keys)):
+        filled = {**known, **dict(zip(open_keys, guess, strict=True))}
+        answers.add(_classify({key: bool(state) for key, state in filled.items()}, ratio, stated))
     if len(answers) == 1:
         return answers.pop()
     categories = sorted({category for category, _ in answers})

@@ -1,7 +1,7 @@
 """Check solutions: how far the probe was off, and what to do about it.
 
-δ = Eh_solution(T) − reading − E_ref(T) is what a perfect probe would have had to be raised by. Between two checks of one
-probe and day it is taken linear in time; a single one is constant.
+δ = Eh_solution(T) − reading − E_ref(T) is what a perfect probe would have had to be raised by. Between two checks of
+one probe and day it is taken linear in time; a single one is constant.
 """
 
 from collections.abc import Callable

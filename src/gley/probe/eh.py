@@ -10,6 +10,7 @@ from gley.findings import Findings
 from gley.probe.checks import Correction, corrections, read_checks
 from gley.probe.electrodes import FILL_UNKNOWN, HYDROGEN, OWN_OFFSET, find_electrode, half_cells
 from gley.settings import ProbeSettings, Settings
+from gley.survey import of_station
 
 POISED_mol_L = 1e-5
 """Dissolved iron or sulfide from which platinum settles on the water's own couple: the exchange-current rule of
@@ -83,7 +84,7 @@ def _temperatures(survey, settings: Settings, findings: Findings) -> tuple[np.nd
     samples = survey.samples
     measured = samples["temperature_C"].to_numpy(float)
     used, basis = measured.copy(), np.where(np.isnan(measured), "", "measured").astype(object)
-    unit = samples["station"].map(survey.stations.drop_duplicates("station").set_index("station")["aquifer"]).fillna("")
+    unit = of_station(samples, survey.stations, "aquifer")
     keys = [[samples["round"], unit], [samples["round"]]]
     words = ["median of the round and unit", "median of the round"]
     for key, name in zip(keys, words, strict=True):
@@ -102,9 +103,11 @@ def _temperatures(survey, settings: Settings, findings: Findings) -> tuple[np.nd
 def _electrodes(survey, stated: ProbeSettings, findings: Findings) -> np.ndarray:
     """Electrode of each sample by the table's name; '' where none is known."""
     samples = survey.samples
-    of_station = survey.stations.drop_duplicates("station").set_index("station")["electrode"]
-    written = samples["electrode"].astype(object).where(samples["electrode"] != "", samples["station"].map(of_station))
-    written = written.fillna("").replace("", survey.facts.get("electrode", "")).to_numpy(dtype=object)
+    declared = survey.facts.get("electrode", "")
+    at_station = of_station(samples, survey.stations, "electrode")
+    written = np.array(
+        [own or its or declared for own, its in zip(samples["electrode"], at_station, strict=True)], object
+    )
     chosen = (
         OWN_OFFSET if stated.offset_mV is not None else find_electrode(stated.electrode) if stated.electrode else ""
     )

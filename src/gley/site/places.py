@@ -9,6 +9,7 @@ from pyproj.exceptions import CRSError
 from gley.errors import UsageError
 from gley.findings import Findings
 from gley.settings import Settings
+from gley.survey import of_station
 
 NONE = "none"
 _DEGREES = "EPSG:4326"
@@ -58,13 +59,13 @@ def places(survey, settings: Settings, findings: Findings) -> geopandas.GeoDataF
 
 def _coordinates(survey) -> pd.DataFrame:
     """x, y of each sample, whether they are degrees, and the reference system written beside them."""
-    stations = survey.stations.drop_duplicates("station").set_index("station")
-    own, at = survey.samples, survey.samples["station"]
+    own, stations = survey.samples, survey.stations
     columns = {}
     for name in ("x_m", "y_m", "longitude_deg", "latitude_deg"):
-        columns[name] = own[name].fillna(at.map(stations[name])).to_numpy(float)
+        columns[name] = own[name].fillna(of_station(own, stations, name)).to_numpy(float)
     projected = ~np.isnan(columns["x_m"]) & ~np.isnan(columns["y_m"])
-    crs = own["crs"].where(own["crs"] != "", at.map(stations["crs"])).fillna("").to_numpy(dtype=object)
+    at_station = of_station(own, stations, "crs")
+    crs = np.array([mine or its for mine, its in zip(own["crs"], at_station, strict=True)], object)
     return pd.DataFrame(
         {
             "x": np.where(projected, columns["x_m"], columns["longitude_deg"]),

@@ -11,7 +11,7 @@ from types import MappingProxyType
 
 from gley.columns import columns, constituents
 from gley.errors import GleyError
-from gley.formula import parse
+from gley.formula import molar_mass, parse
 from gley.units import Unit, recognise
 
 KINDS = ("samples", "stations", "checks", "long")
@@ -19,6 +19,7 @@ _BRACKET = re.compile(r"^(.*?)\s*[\(\[]\s*([^()\[\]]*(?:\([^()]*\))?[^()\[\]]*)\
 _BESIDE_THE_POINT = re.compile(
     r"(?i)(?<![A-Za-z])(field|dissolved|diss|filtered|filt|conc|value|measured|in situ)(?![A-Za-z])"
 )
+_AS = re.compile(r"[\s_-]as[\s_-]+\(?[A-Z][A-Za-z0-9]*\)?\s*$")
 _REPLICATE = re.compile(r"^(?:pt|orp|redox|eh|electrode|platinum)\s*(\d{1,2})$")
 
 
@@ -87,7 +88,7 @@ def understand(text: object, kind: str, stated: Mapping[str, str] | None = None)
         and unit.kind == "percent"
     ):
         return Header(shown, "O2_percent", unit)
-    target = known.get(plain(name), "") or known.get(plain(_BESIDE_THE_POINT.sub(" ", name)), "")
+    target = known.get(plain(name), "") or known.get(plain(_BESIDE_THE_POINT.sub(" ", _AS.sub("", name))), "")
     if target == "depth_cm" and unit and unit.kind == "length" and unit.factor > 0.1:
         # a depth in m or ft is that of a screen or a sampled interval, not of an electrode in the soil
         target = "depth_bottom_m"
@@ -120,7 +121,7 @@ def counts_as(shown: str, element: str) -> str:
     found = re.search(r"[-\s_]as[-\s_]+\(?([A-Z][A-Za-z0-9]*)\)?\s*$", name) or re.search(r"[-\s_](N|P|S|C)\s*$", name)
     text = found.group(1) if found else re.sub(r"\^?\d*[-+−]$", "", name)
     try:
-        return text if parse(text).atoms.get(element) else ""
+        return text if parse(text).atoms.get(element) and molar_mass(text) else ""
     except GleyError:
         return ""
 

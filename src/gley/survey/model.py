@@ -23,6 +23,13 @@ class Origin:
         return self.cells.get((table, row, column)) or self.cells.get((table, row, "")) or Place()
 
 
+def of_station(samples: pd.DataFrame, stations: pd.DataFrame, column: str) -> pd.Series:
+    """What the stations table holds in a column for each sample (index as the samples; NaN or "" where nothing)."""
+    known = dict(zip(stations["station"], stations[column], strict=True))
+    empty = "" if stations[column].dtype == object else float("nan")
+    return pd.Series([known.get(name, empty) for name in samples["station"]], index=samples.index)
+
+
 @dataclass(frozen=True)
 class Survey:
     """A survey read whole. All tables have every column of the vocabulary; nothing delivered is lost.

@@ -1,9 +1,14 @@
 """The blank field workbook: what to write down on site, in the columns and units that the reader knows."""
 
 import datetime as dt
+import io
 import os
-import tempfile
+import re
+import tomllib
+import zipfile
 from collections.abc import Sequence
+from dataclasses import dataclass
+from importlib.resources import files
 from pathlib import Path
 
 import openpyxl
@@ -13,65 +18,99 @@ from openpyxl.utils import get_column_letter
 from openpyxl.worksheet.datavalidation import DataValidation
 from openpyxl.worksheet.worksheet import Worksheet
 
-from gley.columns import Column, columns, constituents
+from gley.columns import columns, constituents
 from gley.errors import GleyError, UsageError
 
 ROWS = 200
-"""Rows of a sheet that carry checks on what is typed."""
+"""Rows of a table that carry checks on what is typed."""
+RULED = 26
+"""Rows ruled for writing by hand: one printed page."""
 
 FIELD = (
-    "sample", "station", "date", "time", "round", "sample_type", "duplicate_of", "depth_cm", "probe", "electrode",
-    "ORP_mV", "pH", "temperature_C", "SC_uS_cm", "turbidity_NTU", "water_level_m", "remarks",
+    "sample", "station", "round", "date", "time", "sample_type", "duplicate_of", "depth_cm", "water_level_m", "probe",
+    "electrode", "ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "turbidity_NTU", "remarks",
 )  # fmt: skip
-LABORATORY = {
-    "O2": "mg/L", "alkalinity": "mg/L as CaCO3", "Ca": "mg/L", "Mg": "mg/L", "Na": "mg/L", "K": "mg/L", "Cl": "mg/L",
-    "SO4": "mg/L", "NO3": "mg/L as N", "NH4": "mg/L as N", "sulfide": "mg/L as S", "Fe": "mg/L", "Mn": "mg/L",
-    "As": "µg/L", "U": "µg/L", "Cr": "µg/L", "DOC": "mg/L as C",
-}  # fmt: skip
+LABORATORY = (
+    "alkalinity", "Fe_II", "sulfide", "Fe", "Mn", "NO3", "NO2", "NH4", "SO4", "Cl", "PO4", "F", "Ca", "Mg", "Na", "K",
+    "DOC", "CH4", "As", "As_III", "U", "Cr", "Cr_VI", "Se", "Cu",
+)  # fmt: skip
+UNITS = {
+    "alkalinity": "mg/L as CaCO3", "NO3": "mg/L as N", "NO2": "mg/L as N", "NH4": "mg/L as N", "PO4": "mg/L as P",
+    "sulfide": "mg/L as S",
+} | dict.fromkeys(("As", "As_III", "U", "Cr", "Cr_VI", "Se", "Cu"), "µg/L")  # fmt: skip
+"""Unit of each constituent as laboratories usually give it; mg/L where none is named here."""
 STATIONS = (
-    "station", "x_m", "y_m", "crs", "ground_elevation_m", "screen_top_m", "screen_bottom_m", "aquifer", "remarks",
+    "station", "latitude_deg", "longitude_deg", "x_m", "y_m", "crs", "ground_elevation_m", "screen_top_m",
+    "screen_bottom_m", "aquifer", "electrode", "remarks",
 )  # fmt: skip
 CHECKS = ("date", "time", "probe", "solution", "temperature_C", "reading_mV", "electrode", "remarks")
-FACTS = ("project", "site", "electrode", "probe", "crs", "operator", "remarks")
-SOLUTIONS = ("ZoBell", "Light", "quinhydrone pH 4", "quinhydrone pH 7")
-LISTS: dict[str, tuple[str, ...]] = {"sample_type": ("normal", "duplicate", "blank", "spike"), "solution": SOLUTIONS}
+FACTS = {
+    "Project": "project or client reference",
+    "Site": "name of the site",
+    "Purpose": "what the survey is for",
+    "Date": "day or period of the survey",
+    "Sampled by": "who took the readings",
+    "ORP probe": "maker's name and number of the probe, as in the column probe",
+    "Electrode and filling solution": "as on its label, for example Ag/AgCl, 3 M KCl; holds for every row without one",
+    "Coordinate reference system": "for example EPSG:25832; holds for every station without one",
+    "Remarks": "weather, purging, anything unusual",
+}
+# a value that stands in the form already, so that an otherwise empty sheet is known for what it is
+_FILLED = {"Purpose": "redox survey: ORP and pH with chemistry"}
+LISTS = {
+    "sample_type": ("normal", "duplicate", "blank", "spike"),
+    "pH_where": ("field", "laboratory"),
+    "solution": ("ZoBell", "Light", "quinhydrone pH 4", "quinhydrone pH 7"),
+}
+"""Choices that are short enough to stand in the check itself."""
 
-HOW_TO = (
-    ("Before you go", "Clean the platinum, fill the reference electrode, note its filling solution on the sheet Facts."),
-    ("Check the probe", "Read a check solution at the start and end of the day: solution, temperature, reading, time."),
-    ("Read", "Flow cell without air, until ORP, pH and temperature hold still. Write ORP as shown, in mV."),
-    ("Don't convert", "Leave the reference electrode in the number. If the meter shows Eh already, say so on Facts: Eh."),
-    ("One row, one sample", "A field duplicate is a row of its own: type duplicate, and the sample it belongs to."),
-    ("Not detected", "Write <0.5 with the laboratory's limit. Leave a cell empty only if nothing was measured."),
-    ("Dissolved", "Iron, manganese and arsenic from filtered, acidified bottles; remark it if not filtered."),
-    ("Mind", "Platinum shows a mixed potential and is blind to oxygen and nitrate: take O2 and nitrate too."),
-)  # fmt: skip
+_WHO = PatternFill("solid", fgColor="EEDFBC")  # ochre: which sample, where, when
+_READ = PatternFill("solid", fgColor="E6BFA6")  # rust: read on site
+_LAB = PatternFill("solid", fgColor="C9D5DA")  # blue-grey: chemistry
+_UNIT = PatternFill("solid", fgColor="F6F1E7")
+_INK, _PALE = "33291F", "6B5F52"
+_HAIR = Side(style="thin", color="B9AD9C")
+_BOX = Border(left=_HAIR, right=_HAIR, top=_HAIR, bottom=_HAIR)
+_WIDTHS = {"sample": 15, "station": 14, "electrode": 25, "solution": 17, "aquifer": 20, "remarks": 30, "crs": 13}
+_READINGS = frozenset({"ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "turbidity_NTU", "reading_mV"})
+_MADE = (2026, 1, 1, 0, 0, 0)
 
-_HEAD = PatternFill("solid", fgColor="E7D3B8")
-_LAB = PatternFill("solid", fgColor="CFDAD8")
-_UNITS = PatternFill("solid", fgColor="F4EFE6")
-_LINE = Border(bottom=Side(style="thin", color="8A7A66"))
-_MADE = dt.datetime(2026, 1, 1)
+
+@dataclass(frozen=True)
+class _Head:
+    """One column of the form."""
+
+    name: str
+    unit: str
+    meaning: str
+    dtype: str
+    low: float | None = None
+    high: float | None = None
 
 
 def write_sheet(path: str | Path, electrodes: Sequence[str] = (), overwrite: bool = False) -> Path:
-    """Write the blank field workbook.
+    """Write the blank field workbook; the same arguments give the same bytes.
 
     Parameters
     ----------
     path : path
-        An .xlsx file.
+        An .xlsx file in a folder that exists.
     electrodes : sequence of str
-        Names offered in the electrode cells.
+        Names of reference electrodes, offered in the electrode cells.
     overwrite : bool
         Replace an existing file.
+
+    Returns
+    -------
+    Path
+        The file written.
 
     Raises
     ------
     UsageError
         When the suffix isn't .xlsx.
     GleyError
-        When the file exists and `overwrite` isn't set, or the folder can't be written.
+        When the file exists and `overwrite` isn't set, or can't be written.
     """
     path = Path(path)
     if path.suffix.lower() != ".xlsx":
@@ -80,129 +119,216 @@ def write_sheet(path: str | Path, electrodes: Sequence[str] = (), overwrite: boo
     if path.exists() and not overwrite:
         message = f"{path} is there already; nothing was changed."
         raise GleyError(message, "Give another name, or --overwrite to replace it.")
-    book = _book(tuple(electrodes))
+    content = _bytes(_book((electrodes,) if isinstance(electrodes, str) else tuple(electrodes)))
+    part = path.with_name(f".{path.name}.{os.getpid()}.part")
     try:
-        handle, name = tempfile.mkstemp(suffix=".xlsx", dir=path.parent or Path())
-        os.close(handle)
-        book.save(name)
-        os.replace(name, path)
+        part.write_bytes(content)
+        part.replace(path)
     except OSError as error:
         message = f"{path}: can't be written ({error.strerror})."
-        raise GleyError(message, "Check the folder and its permissions.") from None
+        cure = "Check that the folder exists and may be written to, and that no other program has the file open."
+        raise GleyError(message, cure) from None
+    finally:
+        if part.parent.is_dir():
+            part.unlink(missing_ok=True)
     return path
+
+
+def _bytes(book: openpyxl.Workbook) -> bytes:
+    """The file's content, without the clock: same form, same bytes."""
+    saved, made = io.BytesIO(), io.BytesIO()
+    book.save(saved)
+    stamp = dt.datetime(*_MADE).strftime("%Y-%m-%dT%H:%M:%SZ").encode()
+    with zipfile.ZipFile(saved) as old, zipfile.ZipFile(made, "w") as new:
+        for name in old.namelist():
+            content = old.read(name)
+            if name == "docProps/core.xml":  # openpyxl puts the hour of saving here
+                content = re.sub(rb"(<dcterms:modified[^>]*>)[^<]*", rb"\g<1>" + stamp, content)
+            new.writestr(zipfile.ZipInfo(name, _MADE), content, zipfile.ZIP_DEFLATED)
+    return made.getvalue()
 
 
 def _book(electrodes: tuple[str, ...]) -> openpyxl.Workbook:
     book = openpyxl.Workbook()
-    book.properties.creator = "gley"
-    book.properties.created = book.properties.modified = _MADE
-    how = book.active
-    assert how is not None
-    _how_to(how)
-    lists = book.create_sheet("Lists")
-    offered = {**LISTS, **({"electrode": electrodes} if electrodes else {})}
-    ranges = _lists(lists, offered)
-    _samples(book.create_sheet("Samples", 1), ranges)
-    _table(book.create_sheet("Stations", 2), [columns("stations")[name] for name in STATIONS], ranges)
-    _table(book.create_sheet("Checks", 3), [columns("checks")[name] for name in CHECKS], ranges)
-    _facts(book.create_sheet("Facts", 4), ranges)
-    lists.sheet_state = "hidden"
+    book.properties.creator, book.properties.title = "gley", "Field workbook for a redox survey"
+    book.properties.created = book.properties.modified = dt.datetime(*_MADE)
+    samples = book.active
+    assert isinstance(samples, Worksheet)
+    samples.title = "Samples"
+    stations, checks, facts, how = (book.create_sheet(name) for name in ("Stations", "Checks", "Facts", "How to"))
+    known = _how_to(how, electrodes)
+    ranges = {"electrode": known} if electrodes else {}
+    names = f"$A$3:$A${ROWS + 2}"
+    offered = ranges | {"duplicate_of": names, "station": f"Stations!{names}"}
+    _table(samples, [_head(name) for name in (*FIELD, *LABORATORY)], offered)
+    _print_in_two(samples)
+    _table(stations, [_head(name, "stations") for name in STATIONS], ranges)
+    _table(checks, [_head(name, "checks") for name in CHECKS], ranges)
+    _facts(facts, ranges)
     return book
 
 
-def _how_to(sheet: Worksheet) -> None:
-    sheet.title = "How to"
-    sheet["A1"] = "Field workbook for a redox survey"
-    sheet["A1"].font = Font(bold=True, size=14)
-    for row, (what, words) in enumerate(HOW_TO, start=3):
-        sheet.cell(row, 1, what).font = Font(bold=True)
-        sheet.cell(row, 2, words).alignment = Alignment(wrap_text=True, vertical="top")
-        sheet.cell(row, 1).alignment = Alignment(vertical="top")
-        sheet.row_dimensions[row].height = 32
-    sheet.column_dimensions["A"].width = 22
-    sheet.column_dimensions["B"].width = 90
+def _head(name: str, table: str = "samples") -> _Head:
+    """A column of the form from the vocabulary."""
+    column = columns(table).get(name)
+    if column is None:
+        item = constituents()[name]
+        return _Head(name, UNITS.get(name, "mg/L"), item.meaning, "amount")
+    return _Head(name, column.unit, column.meaning, column.dtype, column.minimum, column.maximum)
 
 
-def _lists(sheet: Worksheet, offered: dict[str, tuple[str, ...]]) -> dict[str, str]:
-    """Choices on a sheet of their own, and the range of each."""
-    ranges = {}
-    for c, (name, choices) in enumerate(offered.items(), start=1):
-        sheet.cell(1, c, f"choices: {name}")
-        for r, choice in enumerate(choices, start=2):
-            sheet.cell(r, c, choice)
-        letter = get_column_letter(c)
-        ranges[name] = f"Lists!${letter}$2:${letter}${len(choices) + 1}"
-    return ranges
+def _table(sheet: Worksheet, heads: list[_Head], ranges: dict[str, str]) -> None:
+    """Headings, units and checks of one table; printing and panes."""
+    for c, head in enumerate(heads, start=1):
+        _heading(sheet, c, head)
+        _check(sheet, c, head, ranges)
+        for row in range(3, RULED + 3):
+            sheet.cell(row, c).border = _BOX
+    sheet.row_dimensions[1].height, sheet.row_dimensions[2].height = 20, 17
+    for row in range(3, RULED + 3):
+        sheet.row_dimensions[row].height = 21
+    sheet.freeze_panes = "C3" if heads[0].name == "sample" else "B3"
+    sheet.print_title_rows = "1:2"
+    _page(sheet, "landscape")
 
 
-def _samples(sheet: Worksheet, ranges: dict[str, str]) -> None:
-    field = [columns("samples")[name] for name in FIELD]
-    _table(sheet, field, ranges)
-    for c, (key, unit) in enumerate(LABORATORY.items(), start=len(field) + 1):
-        item = constituents()[key]
-        _head(sheet, c, key, unit, f"{item.meaning}, in {unit}; write <limit when not detected", _LAB)
+def _heading(sheet: Worksheet, c: int, head: _Head) -> None:
+    top, below = sheet.cell(1, c, head.name), sheet.cell(2, c, head.unit or None)
+    top.font, top.border, below.border = Font(bold=True, color=_INK), _BOX, _BOX
+    top.fill = _LAB if head.dtype == "amount" and head.name != "O2" else _READ if head.name in _READINGS else _WHO
+    below.font, below.fill = Font(italic=True, color=_PALE), _UNIT
+    top.alignment = below.alignment = Alignment(horizontal="center", vertical="center")
+    note = Comment(_note(head), "gley")
+    note.width, note.height = 280, 90
+    top.comment = note
+    width = _WIDTHS.get(head.name, max(len(head.name), len(head.unit), 7) + 2)
+    sheet.column_dimensions[get_column_letter(c)].width = width
 
 
-def _table(sheet: Worksheet, wanted: list[Column], ranges: dict[str, str]) -> None:
-    """Header, units and checks of one table; printing and panes."""
-    for c, column in enumerate(wanted, start=1):
-        _head(sheet, c, column.name, column.unit, column.meaning, _HEAD)
-        _validate(sheet, c, column, ranges)
-    sheet.freeze_panes = "C3"
-    sheet.page_setup.orientation = "landscape"
+def _note(head: _Head) -> str:
+    """Meaning, range and form of what is written in a column."""
+    lines = [head.meaning]
+    if head.dtype == "amount":
+        lines.append(f"in {head.unit}; not detected: write <0.5 with the laboratory's limit")
+    elif head.low is not None and head.high is not None:
+        lines.append(f"{head.low:g} to {head.high:g} {head.unit}".strip())
+    elif head.dtype == "date":
+        lines.append("as 2031-04-28")
+    elif head.dtype == "time":
+        lines.append("as 14:05")
+    return "\n".join(lines)
+
+
+def _check(sheet: Worksheet, c: int, head: _Head, ranges: dict[str, str]) -> None:
+    """The check on what is typed into a column; dates and times are also shown as such."""
+    letter = get_column_letter(c)
+    shown = {"date": "yyyy-mm-dd", "time": "hh:mm"}.get(head.dtype)
+    for row in range(3, ROWS + 3):
+        if shown:
+            sheet[f"{letter}{row}"].number_format = shown
+    rule = _rule(head, f"{letter}3", ranges)
+    if rule is not None:
+        rule.errorTitle, rule.allow_blank = head.name, True
+        rule.showErrorMessage = rule.error is not None
+        sheet.add_data_validation(rule)
+        rule.add(f"{letter}3:{letter}{ROWS + 2}")
+
+
+def _rule(head: _Head, first: str, ranges: dict[str, str]) -> DataValidation | None:
+    """A list where there are choices, else what is possible. Where the reader takes more than the check knows (another
+    electrode, a laboratory's flag) it warns and lets it pass.
+    """
+    if head.name in LISTS:
+        choices = ",".join(LISTS[head.name])
+        style = "warning" if head.name == "solution" else "stop"
+        return DataValidation("list", formula1=f'"{choices}"', errorStyle=style, error=f"One of: {choices}.")
+    if head.name in ranges:
+        words = "Not in the list on the sheet How to. Keep it if it is what the label says."
+        error = words if head.name == "electrode" else None
+        return DataValidation("list", formula1=f"={ranges[head.name]}", errorStyle="warning", error=error)
+    if head.name == "sample":
+        once = f"COUNTIF($A$3:$A${ROWS + 2},{first})=1"
+        return DataValidation("custom", formula1=once, errorStyle="warning", error="This name is in use already.")
+    if head.dtype == "amount":
+        words = "A number, or a non-detect with its limit as <0.5. Leave the cell empty if nothing was measured."
+        form = f'OR(AND(ISNUMBER({first}),{first}>=0),LEFT({first},1)="<",LEFT({first},1)=">")'
+        return DataValidation("custom", formula1=form, errorStyle="warning", error=words)
+    return _range(head, first)
+
+
+def _range(head: _Head, first: str) -> DataValidation | None:
+    """The range of a number, date or time."""
+    if head.dtype == "date":
+        return DataValidation("date", operator="greaterThan", formula1="36525", error="A date, as 2031-04-28.")
+    if head.dtype == "time":
+        return DataValidation("time", formula1="0", formula2="0.999999", error="A time of day, as 14:05.")
+    if head.dtype != "number":
+        return None
+    if head.low is None or head.high is None:
+        return DataValidation("custom", formula1=f"ISNUMBER({first})", error="A number.")
+    low, high = f"{head.low:g}", f"{head.high:g}"
+    error = f"{low} to {high} {head.unit}".strip() + " is possible."
+    return DataValidation("decimal", operator="between", formula1=low, formula2=high, error=error)
+
+
+def _page(sheet: Worksheet, orientation: str) -> None:
+    sheet.page_setup.orientation, sheet.page_setup.paperSize = orientation, sheet.PAPERSIZE_A4
     sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight = 1, 0
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
-    sheet.print_title_rows = "1:2"
+    for side in ("left", "right"):
+        setattr(sheet.page_margins, side, 0.4)
+    sheet.page_margins.top, sheet.page_margins.bottom = 0.5, 0.6
+    sheet.oddFooter.left.text, sheet.oddFooter.right.text = "&A", "page &P of &N"
 
 
-def _head(sheet: Worksheet, c: int, name: str, unit: str, meaning: str, fill: PatternFill) -> None:
-    top, below = sheet.cell(1, c, name), sheet.cell(2, c, unit or "-")
-    top.font, top.fill, top.alignment = Font(bold=True), fill, Alignment(horizontal="center")
-    below.font, below.fill, below.border = Font(italic=True, color="5A5148"), _UNITS, _LINE
-    below.alignment = Alignment(horizontal="center")
-    note = Comment(meaning, "gley")
-    note.width, note.height = 260, 70
-    top.comment = note
-    sheet.column_dimensions[get_column_letter(c)].width = max(len(name), len(unit)) + 4
+def _print_in_two(sheet: Worksheet) -> None:
+    """What is written on site on one page, the chemistry on the next, with the sample's name on both.
 
-
-def _validate(sheet: Worksheet, c: int, column: Column, ranges: dict[str, str]) -> None:
-    """A check on what is typed: a list where there is one, else the range that is physically possible."""
-    letter = get_column_letter(c)
-    cells = f"{letter}3:{letter}{ROWS + 2}"
-    rule = None
-    if column.name in ranges:
-        # other words are allowed too: the probe may be one that the list doesn't know
-        rule = DataValidation(type="list", formula1=f"={ranges[column.name]}", allow_blank=True, errorStyle="warning")
-        rule.error = "Not in the list; keep it only if you are sure."
-    elif column.minimum is not None and column.maximum is not None:
-        low, high = f"{column.minimum:g}", f"{column.maximum:g}"
-        rule = DataValidation(type="decimal", operator="between", formula1=low, formula2=high, allow_blank=True)
-        rule.error = f"{column.meaning}: {low} to {high} {column.unit}".strip()
-    elif column.dtype == "date":
-        rule = DataValidation(type="date", operator="greaterThan", formula1="36526", allow_blank=True)
-        rule.error = "A date is wanted."
-        for row in range(3, ROWS + 3):
-            sheet[f"{letter}{row}"].number_format = "yyyy-mm-dd"
-    if rule is not None:
-        rule.errorTitle, rule.showErrorMessage = column.name, True
-        sheet.add_data_validation(rule)
-        rule.add(cells)
+    All columns on one page are too narrow to write in. Areas of whole columns end with the last row in use.
+    """
+    last, end = get_column_letter(len(FIELD)), get_column_letter(len(FIELD) + len(LABORATORY))
+    sheet.print_area = f"A1:{last}{ROWS + 2},{get_column_letter(len(FIELD) + 1)}1:{end}{ROWS + 2}"
+    sheet.print_title_cols = "A:A"
 
 
 def _facts(sheet: Worksheet, ranges: dict[str, str]) -> None:
-    words = {
-        "electrode": "reference electrode and filling solution of the ORP probe, e.g. Ag/AgCl, 3 M KCl",
-        "crs": "coordinate reference system of the stations, e.g. EPSG:25832",
-    }
-    for row, key in enumerate(FACTS, start=1):
-        cell = sheet.cell(row, 1, key)
-        cell.font, cell.fill = Font(bold=True), _HEAD
-        sheet.cell(row, 3, words.get(key, "")).font = Font(italic=True, color="5A5148")
-        if key in ranges:
-            rule = DataValidation(type="list", formula1=f"={ranges[key]}", allow_blank=True, errorStyle="warning")
+    """Key and value, what to write as a note; lines below must hold no second cell, or they would read as facts."""
+    for row, (key, words) in enumerate(FACTS.items(), start=1):
+        name, value = sheet.cell(row, 1, key), sheet.cell(row, 2, _FILLED.get(key))
+        name.font, name.fill, name.border, value.border = Font(bold=True, color=_INK), _WHO, _BOX, _BOX
+        name.alignment, value.alignment = Alignment(vertical="center"), Alignment(vertical="center", wrap_text=True)
+        name.comment = Comment(words, "gley")
+        sheet.row_dimensions[row].height = 24
+        sheet.cell(len(FACTS) + 2 + row, 1, f"{key} – {words}").font = Font(italic=True, color=_PALE)
+        if "electrode" in ranges and key.startswith("Electrode"):
+            rule = _rule(_head("electrode"), f"B{row}", ranges)
+            assert rule is not None
+            rule.allow_blank = rule.showErrorMessage = True
             sheet.add_data_validation(rule)
             rule.add(f"B{row}")
-    sheet.column_dimensions["A"].width = 16
-    sheet.column_dimensions["B"].width = 40
-    sheet.column_dimensions["C"].width = 70
+    sheet.column_dimensions["A"].width, sheet.column_dimensions["B"].width = 32, 62
+    _page(sheet, "portrait")
+
+
+def _how_to(sheet: Worksheet, electrodes: tuple[str, ...]) -> str:
+    """The instructions, and below them the electrodes; returns the range of these."""
+    sheet["A1"] = "How to fill this workbook"
+    sheet["A2"] = "Purpose: redox survey, ORP and pH with chemistry"
+    sheet["A1"].font, sheet["A2"].font = Font(bold=True, size=15, color=_INK), Font(italic=True, color=_PALE)
+    parts = tomllib.loads((files("gley.survey") / "how_to.toml").read_text(encoding="utf-8"))
+    if electrodes:
+        parts["Reference electrodes to choose from"] = list(electrodes)
+    row, first = 3, 0
+    for heading, lines in parts.items():
+        sheet.cell(row + 1, 1, heading).font = Font(bold=True, color=_INK)
+        sheet.cell(row + 1, 1).fill = _READ if heading == "Mind" else _WHO
+        first, row = row + 2, row + 2
+        for line in lines:
+            cell = sheet.cell(row, 1, line)
+            cell.alignment, cell.font = Alignment(wrap_text=True, vertical="top", indent=1), Font(color=_INK)
+            sheet.row_dimensions[row].height = 16 * (1 + len(line) // 105)
+            row += 1
+    sheet.column_dimensions["A"].width = 100
+    sheet.sheet_view.showGridLines = False
+    _page(sheet, "portrait")
+    return f"'{sheet.title}'!$A${first}:$A${row - 1}"
