@@ -16,6 +16,8 @@ from gley.stability import Chart, Conditions
 FAN = (10, 90)
 """Percentiles of the detected totals between which a fan shows how far lines move."""
 
+NAMES = {"As": "Arsenic", "Fe": "Iron", "Mn": "Manganese", "S": "Sulfur"}
+
 _FAN_LEAST = 5
 _MARGIN_mV = 100.0
 
@@ -82,7 +84,7 @@ def _sheet(element, waters, points, found: tuple[int, Conditions], window, setti
     column = waters.get(amount_column(element), pd.Series(np.nan, index=waters.index))
     totals = column[np.isin(waters["sample"], points["sample"])].to_numpy(float)
     return ChartSheet(
-        key=element, title=f"{element} in the E–pH plane", chart=chart, over=None,
+        key=element, title=NAMES.get(element, element), chart=chart, over=None,
         fan=_fan(element, conditions, totals, window, settings.chart), points=points,
         reference=f"sample {waters['sample'].iloc[row]}", notes=_notes(points, settings.chart.background_mismatch),
     )  # fmt: skip
@@ -118,7 +120,7 @@ def _overlay(arsenic: ChartSheet, iron: ChartSheet, waters: pd.DataFrame, settin
     found = stability.reference(waters, "Fe", settings, here)
     same = found is not None
     return ChartSheet(
-        key="As_over_Fe", title="As over Fe in the E–pH plane",
+        key="As_over_Fe", title="Arsenic over iron",
         chart=stability.chart_at("Fe", found[1], window) if found is not None else iron.chart,
         over=arsenic.chart, fan=None, points=arsenic.points,
         reference=arsenic.reference if same else f"{arsenic.reference} (As) and {iron.reference} (Fe)", notes=(),

@@ -83,11 +83,12 @@ def run(
     Example: gley run survey.xlsx --out assessment
     """
     from gley import pipeline, wording
+    from gley.delivery import refuse
 
     chosen = _settings(settings, electrode, crs, elements=elements, solids=solids)
     folder = out or Path(f"{surveys[0].stem}_redox")
     _tell(f"Reading {', '.join(str(path) for path in surveys)}")
-    pipeline.refuse_folder(folder, overwrite)
+    refuse(folder, overwrite)
     result = pipeline.run(list(surveys), chosen, command=_command())
     _tell_findings(result.findings)
     _tell(f"Writing {folder}")

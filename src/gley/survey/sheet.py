@@ -23,12 +23,12 @@ from gley.errors import GleyError, UsageError
 
 ROWS = 200
 """Rows of a table that carry checks on what is typed."""
-RULED = 26
-"""Rows ruled for writing by hand: one printed page."""
+RULED = {"Samples": 27, "Stations": 23, "Checks": 15}
+"""Rows ruled for writing by hand: one printed page of each table."""
 
 FIELD = (
     "sample", "station", "round", "date", "time", "sample_type", "duplicate_of", "depth_cm", "water_level_m", "probe",
-    "electrode", "ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "turbidity_NTU", "remarks",
+    "electrode", "ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "remarks",
 )  # fmt: skip
 LABORATORY = (
     "alkalinity", "Fe_II", "sulfide", "Fe", "Mn", "NO3", "NO2", "NH4", "SO4", "Cl", "PO4", "F", "Ca", "Mg", "Na", "K",
@@ -45,18 +45,19 @@ STATIONS = (
 )  # fmt: skip
 CHECKS = ("date", "time", "probe", "solution", "temperature_C", "reading_mV", "electrode", "remarks")
 FACTS = {
-    "Project": "project or client reference",
-    "Site": "name of the site",
-    "Purpose": "what the survey is for",
+    "Project": "",
+    "Site": "",
+    "Purpose": "",
     "Date": "day or period of the survey",
-    "Sampled by": "who took the readings",
-    "ORP probe": "maker's name and number of the probe, as in the column probe",
+    "Sampled by": "",
+    "ORP probe": "maker and number of the probe, the same name as in the column probe",
     "Electrode and filling solution": "as on its label, for example Ag/AgCl, 3 M KCl; holds for every row without one",
     "Coordinate reference system": "for example EPSG:25832; holds for every station without one",
     "Remarks": "weather, purging, anything unusual",
 }
+"""What holds for the whole survey: key and, where it needs one, a word on what to write."""
 # a value that stands in the form already, so that an otherwise empty sheet is known for what it is
-_FILLED = {"Purpose": "redox survey: ORP and pH with chemistry"}
+_FILLED = {"Purpose": "redox survey, ORP and pH with chemistry"}
 LISTS = {
     "sample_type": ("normal", "duplicate", "blank", "spike"),
     "pH_where": ("field", "laboratory"),
@@ -71,9 +72,23 @@ _UNIT = PatternFill("solid", fgColor="F6F1E7")
 _INK, _PALE = "33291F", "6B5F52"
 _HAIR = Side(style="thin", color="B9AD9C")
 _BOX = Border(left=_HAIR, right=_HAIR, top=_HAIR, bottom=_HAIR)
-_WIDTHS = {"sample": 15, "station": 14, "electrode": 25, "solution": 17, "aquifer": 20, "remarks": 30, "crs": 13}
-_READINGS = frozenset({"ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "turbidity_NTU", "reading_mV"})
+_WIDTHS = {
+    "sample": 14,
+    "station": 13,
+    "date": 12,
+    "electrode": 23,
+    "solution": 18,
+    "aquifer": 18,
+    "remarks": 28,
+    "crs": 13,
+}
+_READINGS = frozenset({"ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "reading_mV"})
+_LAST_ROW = 1048576  # of any sheet
 _MADE = (2026, 1, 1, 0, 0, 0)
+
+
+def _font(**look) -> Font:
+    return Font(**{"name": "Arial", "size": 10, "color": _INK, **look})
 
 
 @dataclass(frozen=True)
@@ -152,6 +167,7 @@ def _book(electrodes: tuple[str, ...]) -> openpyxl.Workbook:
     book = openpyxl.Workbook()
     book.properties.creator, book.properties.title = "gley", "Field workbook for a redox survey"
     book.properties.created = book.properties.modified = dt.datetime(*_MADE)
+    book._named_styles["Normal"].font = _font()  # column widths are counted in its digits
     samples = book.active
     assert isinstance(samples, Worksheet)
     samples.title = "Samples"
@@ -182,11 +198,9 @@ def _table(sheet: Worksheet, heads: list[_Head], ranges: dict[str, str]) -> None
     for c, head in enumerate(heads, start=1):
         _heading(sheet, c, head)
         _check(sheet, c, head, ranges)
-        for row in range(3, RULED + 3):
-            sheet.cell(row, c).border = _BOX
-    sheet.row_dimensions[1].height, sheet.row_dimensions[2].height = 20, 17
-    for row in range(3, RULED + 3):
-        sheet.row_dimensions[row].height = 21
+    sheet.row_dimensions[1].height, sheet.row_dimensions[2].height = 22, 18
+    for row in range(3, RULED[sheet.title] + 3):
+        sheet.row_dimensions[row].height = 28
     sheet.freeze_panes = "C3" if heads[0].name == "sample" else "B3"
     sheet.print_title_rows = "1:2"
     _page(sheet, "landscape")
@@ -194,14 +208,14 @@ def _table(sheet: Worksheet, heads: list[_Head], ranges: dict[str, str]) -> None
 
 def _heading(sheet: Worksheet, c: int, head: _Head) -> None:
     top, below = sheet.cell(1, c, head.name), sheet.cell(2, c, head.unit or None)
-    top.font, top.border, below.border = Font(bold=True, color=_INK), _BOX, _BOX
+    top.font, top.border, below.border = _font(bold=True), _BOX, _BOX
     top.fill = _LAB if head.dtype == "amount" and head.name != "O2" else _READ if head.name in _READINGS else _WHO
-    below.font, below.fill = Font(italic=True, color=_PALE), _UNIT
+    below.font, below.fill = _font(italic=True, color=_PALE), _UNIT
     top.alignment = below.alignment = Alignment(horizontal="center", vertical="center")
     note = Comment(_note(head), "gley")
     note.width, note.height = 280, 90
     top.comment = note
-    width = _WIDTHS.get(head.name, max(len(head.name), len(head.unit), 7) + 2)
+    width = _WIDTHS.get(head.name, max(len(head.name), len(head.unit), 6) + 3)
     sheet.column_dimensions[get_column_letter(c)].width = width
 
 
@@ -220,12 +234,13 @@ def _note(head: _Head) -> str:
 
 
 def _check(sheet: Worksheet, c: int, head: _Head, ranges: dict[str, str]) -> None:
-    """The check on what is typed into a column; dates and times are also shown as such."""
+    """The check on what is typed into a column, and how it is shown."""
     letter = get_column_letter(c)
-    shown = {"date": "yyyy-mm-dd", "time": "hh:mm"}.get(head.dtype)
-    for row in range(3, ROWS + 3):
-        if shown:
-            sheet[f"{letter}{row}"].number_format = shown
+    shown = {"date": "yyyy-mm-dd", "time": "hh:mm", "text": "@"}.get(head.dtype, "General")
+    sheet.column_dimensions[letter].number_format = shown
+    for row in range(3, RULED[sheet.title] + 3):
+        cell = sheet.cell(row, c)
+        cell.border, cell.number_format, cell.font, cell.alignment = _BOX, shown, _font(), Alignment(vertical="center")
     rule = _rule(head, f"{letter}3", ranges)
     if rule is not None:
         rule.errorTitle, rule.allow_blank = head.name, True
@@ -277,29 +292,33 @@ def _page(sheet: Worksheet, orientation: str) -> None:
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
     for side in ("left", "right"):
         setattr(sheet.page_margins, side, 0.4)
-    sheet.page_margins.top, sheet.page_margins.bottom = 0.5, 0.6
+    sheet.page_margins.top, sheet.page_margins.bottom, sheet.page_margins.footer = 0.5, 0.7, 0.35
     sheet.oddFooter.left.text, sheet.oddFooter.right.text = "&A", "page &P of &N"
 
 
 def _print_in_two(sheet: Worksheet) -> None:
     """What is written on site on one page, the chemistry on the next, with the sample's name on both.
 
-    All columns on one page are too narrow to write in. Areas of whole columns end with the last row in use.
+    All columns on one page are too narrow to write in. An area of whole columns ends with the last row in use.
     """
     last, end = get_column_letter(len(FIELD)), get_column_letter(len(FIELD) + len(LABORATORY))
-    sheet.print_area = f"A1:{last}{ROWS + 2},{get_column_letter(len(FIELD) + 1)}1:{end}{ROWS + 2}"
+    sheet.print_area = f"A1:{last}{_LAST_ROW},{get_column_letter(len(FIELD) + 1)}1:{end}{_LAST_ROW}"
     sheet.print_title_cols = "A:A"
 
 
 def _facts(sheet: Worksheet, ranges: dict[str, str]) -> None:
     """Key and value, what to write as a note; lines below must hold no second cell, or they would read as facts."""
+    below = len(FACTS) + 1
     for row, (key, words) in enumerate(FACTS.items(), start=1):
         name, value = sheet.cell(row, 1, key), sheet.cell(row, 2, _FILLED.get(key))
-        name.font, name.fill, name.border, value.border = Font(bold=True, color=_INK), _WHO, _BOX, _BOX
+        name.font, name.fill, name.border, value.border = _font(bold=True), _WHO, _BOX, _BOX
         name.alignment, value.alignment = Alignment(vertical="center"), Alignment(vertical="center", wrap_text=True)
-        name.comment = Comment(words, "gley")
-        sheet.row_dimensions[row].height = 24
-        sheet.cell(len(FACTS) + 2 + row, 1, f"{key} – {words}").font = Font(italic=True, color=_PALE)
+        value.font = _font()
+        sheet.row_dimensions[row].height = 26
+        if words:
+            name.comment = Comment(words, "gley")
+            below += 1
+            sheet.cell(below, 1, f"{key} – {words}").font = _font(italic=True, color=_PALE)
         if "electrode" in ranges and key.startswith("Electrode"):
             rule = _rule(_head("electrode"), f"B{row}", ranges)
             assert rule is not None
@@ -313,22 +332,25 @@ def _facts(sheet: Worksheet, ranges: dict[str, str]) -> None:
 def _how_to(sheet: Worksheet, electrodes: tuple[str, ...]) -> str:
     """The instructions, and below them the electrodes; returns the range of these."""
     sheet["A1"] = "How to fill this workbook"
-    sheet["A2"] = "Purpose: redox survey, ORP and pH with chemistry"
-    sheet["A1"].font, sheet["A2"].font = Font(bold=True, size=15, color=_INK), Font(italic=True, color=_PALE)
+    sheet["A2"] = f"Purpose: {_FILLED['Purpose']}"
+    sheet["A1"].font, sheet["A2"].font = _font(bold=True, size=15), _font(italic=True, color=_PALE)
     parts = tomllib.loads((files("gley.survey") / "how_to.toml").read_text(encoding="utf-8"))
     if electrodes:
         parts["Reference electrodes to choose from"] = list(electrodes)
     row, first = 3, 0
     for heading, lines in parts.items():
-        sheet.cell(row + 1, 1, heading).font = Font(bold=True, color=_INK)
-        sheet.cell(row + 1, 1).fill = _READ if heading == "Mind" else _WHO
+        title = sheet.cell(row + 1, 1, heading)
+        title.font, title.fill = _font(bold=True), _READ if heading == "Mind" else _WHO
+        title.alignment = Alignment(vertical="center", indent=1)
+        sheet.row_dimensions[row + 1].height = 17
         first, row = row + 2, row + 2
         for line in lines:
             cell = sheet.cell(row, 1, line)
-            cell.alignment, cell.font = Alignment(wrap_text=True, vertical="top", indent=1), Font(color=_INK)
-            sheet.row_dimensions[row].height = 16 * (1 + len(line) // 105)
+            cell.alignment, cell.font = Alignment(wrap_text=True, vertical="top", indent=1), _font()
+            sheet.row_dimensions[row].height = 14 * (1 + (len(line) - 1) // 105) + 2
             row += 1
-    sheet.column_dimensions["A"].width = 100
+    sheet.column_dimensions["A"].width = 92
     sheet.sheet_view.showGridLines = False
     _page(sheet, "portrait")
+    sheet.page_setup.fitToHeight = 1
     return f"'{sheet.title}'!$A${first}:$A${row - 1}"

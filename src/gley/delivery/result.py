@@ -1,0 +1,44 @@
+"""What a run found, complete in memory: the tables between the rooms and the charts to draw."""
+
+from dataclasses import dataclass, field
+
+import pandas as pd
+from geopandas import GeoDataFrame
+
+from gley.findings import Findings
+from gley.settings import Settings
+from gley.stability import Chart
+from gley.survey import Survey
+
+
+@dataclass(frozen=True)
+class ChartSheet:
+    """One chart of a survey: `key` names its files; `over` is laid over `chart`; `fan` are charts at a low and a high
+    total; `points` has one row per sample shown; `reference` says which sample the chart is drawn at.
+    """
+
+    key: str
+    title: str
+    chart: Chart
+    over: Chart | None
+    fan: tuple[Chart, Chart] | None
+    points: pd.DataFrame
+    reference: str
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class Result:
+    """A run: `eh`, `evidence` and `places` have the index of `survey.samples`, `fields` a row per sample × element."""
+
+    survey: Survey
+    settings: Settings
+    eh: pd.DataFrame
+    fields: pd.DataFrame
+    evidence: pd.DataFrame
+    places: GeoDataFrame | None
+    charts: tuple[ChartSheet, ...]
+    findings: Findings
+    elements: tuple[str, ...]
+    timing: dict[str, float] = field(default_factory=dict)
+    command: str = ""
