@@ -180,7 +180,9 @@ def sample_row(name, well, day, hour, turn, ORP, pH, t, mol):
         "SpCond": round(strength / 1.6e-5), "Alkalinity": round(mol["alkalinity"] * 50043),
         "DO": written("O2", mol), "Sulfide": written("sulfide", mol),
     }  # fmt: skip
-    return row | {key: written(key, mol) for key in ("Ca", "Mg", "Na", "K", "Cl", "SO4", "NO3", "NH4", "Fe", "Mn", "As")}
+    return row | {
+        key: written(key, mol) for key in ("Ca", "Mg", "Na", "K", "Cl", "SO4", "NO3", "NH4", "Fe", "Mn", "As")
+    }
 
 
 def check_rows(drift, rng):
@@ -226,7 +228,11 @@ def workbook(path):
         sheet.append([row.get(name) for name, _ in COLUMNS])
     fill(book.create_sheet("Wells"), ["Well", "Easting (m)", "Northing (m)", "Ground elevation (m)", "Screen top (m)",
          "Screen bottom (m)", "Aquifer"], stations)  # fmt: skip
-    fill(book.create_sheet("Probe checks"), ["Date", "Time", "Probe", "Solution", "Temperature (°C)", "Reading (mV)"], checks)
+    fill(
+        book.create_sheet("Probe checks"),
+        ["Date", "Time", "Probe", "Solution", "Temperature (°C)", "Reading (mV)"],
+        checks,
+    )
     facts = book.create_sheet("Facts")
     for line in (
         ("Project", "Erlenwiek tannery meadow, monitoring 2031"),
@@ -279,7 +285,9 @@ def wetland():
                 name, "14.05.2031", f"{9 + plot}:{10 + 8 * k:02d}", comma(f"{548210.5 + 18 * plot:.1f}"),
                 comma(f"{5921004.0 + 4 * plot:.1f}"), str(depth), *cells, comma(f"{pH:.1f}"), comma(f"{t:.1f}"),
             ]))  # fmt: skip
-            truth.append((f"{name} 2031-05-14 {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), ""))
+            truth.append(
+                (f"{name} 2031-05-14 {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), "")
+            )
     return lines, truth
 
 

@@ -33,8 +33,8 @@ def delivery() -> str:
 def write(folder: Path) -> None:
     """All generated templates into a folder, over what is there."""
     write_sheet(folder / WORKBOOK, [item["name"] for item in electrodes()], overwrite=True)
-    (folder / SETTINGS).write_text(template(), encoding="utf-8")
-    (folder / DELIVERY).write_text(delivery(), encoding="utf-8")
+    (folder / SETTINGS).write_text(template(), encoding="utf-8", newline="\n")
+    (folder / DELIVERY).write_text(delivery(), encoding="utf-8", newline="\n")
 
 
 if __name__ == "__main__":

@@ -4,12 +4,12 @@ import tomllib
 
 import openpyxl
 import pytest
-from make_templates import DELIVERY, SETTINGS, TEMPLATES, WORKBOOK, delivery
 
 from gley.columns import columns, constituents
 from gley.probe import electrodes
 from gley.settings import Settings, load, template
 from gley.survey import read_survey, write_sheet
+from make_templates import DELIVERY, SETTINGS, TEMPLATES, WORKBOOK, delivery
 
 STALE = "stale: run `python tests/make_templates.py`"
 

@@ -19,7 +19,6 @@ FAN = (10, 90)
 NAMES = {"As": "Arsenic", "Fe": "Iron", "Mn": "Manganese", "S": "Sulfur"}
 
 _FAN_LEAST = 5
-_MARGIN_mV = 100.0
 
 
 def chart_sheets(
@@ -54,7 +53,7 @@ def shared_window(waters: pd.DataFrame, stated: ChartSettings) -> tuple[float, f
     """One range for all charts: the settings', widened to whole pH and 100 mV to hold every believable sample."""
     pH, Eh = waters["pH"].to_numpy(float), waters["Eh_mV"].to_numpy(float)
     beyond = np.abs(stability.beyond_water(pH, Eh, waters["temperature_used_C"].to_numpy(float)))
-    keep = beyond <= _MARGIN_mV
+    keep = beyond <= stability.IMPLAUSIBLE_mV
     pH_low, pH_high, E_low, E_high = stated.pH_min, stated.pH_max, stated.Eh_min_mV, stated.Eh_max_mV
     if keep.any():
         pH_low, pH_high = min(pH_low, np.floor(pH[keep].min())), max(pH_high, np.ceil(pH[keep].max()))
@@ -138,8 +137,8 @@ def with_background(fields: pd.DataFrame, sheets: tuple[ChartSheet, ...], findin
         table.loc[rows, "background"] = drawn
         other = int(((table.loc[rows, "field"].to_numpy() != drawn) & (drawn != "")).sum())
         if other:
-            words = {"count": other, "total": len(rows), "reference": sheet.reference}
-            findings.add("stability.background", element=sheet.key, **words)
+            at = sheet.reference
+            findings.add("stability.background", element=sheet.key, count=other, total=len(rows), reference=at)
     return table
 
 

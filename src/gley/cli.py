@@ -228,7 +228,11 @@ def main(argv: Sequence[str] | None = None) -> int:
             raise
         return _fail(error.message, error.cure, 2 if isinstance(error, UsageError) else 1)
     except _ParserError as error:
-        return _fail(error.format_message(), "`gley --help` lists commands, `gley COMMAND --help` their options.", 2)
+        return _fail(
+            str(getattr(error, "format_message", lambda: error)()),
+            "`gley --help` lists commands, `gley COMMAND --help` their options.",
+            2,
+        )
     except (typer.Abort, KeyboardInterrupt):
         return _fail("stopped.", "", 1)
     except Exception as error:

@@ -108,7 +108,8 @@ def typeset(text: str) -> str:
     """A plain-text formula as matplotlib mathtext with upright letters, subscripts and superscripts."""
     body, _, charge = text.partition("^")
     body = re.sub(r"(?<=[A-Za-z)])(\d+)", r"_{\1}", body)
-    charge = charge.replace("-", "−")
+    # braces round the sign: bare, mathtext sets it off like an operator, "2 +"
+    charge = re.sub(r"[+-]", lambda sign: "{" + sign.group().replace("-", "−") + "}", charge)
     return rf"$\mathregular{{{body}{'^{' + charge + '}' if charge else ''}}}$"
 
 

@@ -15,9 +15,6 @@ from gley.findings import Findings, Place
 from gley.settings import Settings
 from gley.survey import Survey, read_survey
 
-IMPLAUSIBLE_mV = 100.0
-"""A potential further than this outside water's stability can't be a reading of a water at rest (common practice)."""
-
 _SHOWN_NAMES = 6
 
 
@@ -97,12 +94,12 @@ def engine_table(survey: Survey, eh: pd.DataFrame) -> pd.DataFrame:
 def water_line_findings(waters: pd.DataFrame, survey: Survey, findings: Findings) -> None:
     """Say which potentials no water at rest can have."""
     beyond = stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
-    for row in np.flatnonzero(np.abs(beyond) > IMPLAUSIBLE_mV):
-        sample = waters.loc[row]
+    for row in map(int, np.flatnonzero(np.abs(beyond) > stability.IMPLAUSIBLE_mV)):
+        sample = waters.iloc[row]
         column = "ORP_mV" if pd.notna(sample["ORP_mV"]) else "Eh_given_mV"
         where = survey.origin.place(row, column)
         findings.add(
-            "stability.outside_water", Place(where.file, where.sheet, where.cell, sample["sample"]),
+            "stability.outside_water", Place(where.file, where.sheet, where.cell, str(sample["sample"])),
             f"{sample['Eh_mV']:.0f}", pH=f"{sample['pH']:.2f}", beyond=f"{abs(beyond[row]):.0f}",
             side="above" if beyond[row] > 0 else "below",
         )  # fmt: skip

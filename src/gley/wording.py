@@ -67,7 +67,7 @@ def check_record(survey: Survey, eh: pd.DataFrame, findings: Findings) -> dict[s
 def check_text(survey: Survey, eh: pd.DataFrame, findings: Findings) -> str:
     """All findings, errors first, then what was read."""
     lines = [str(item) for severity in ("error", "warning", "note") for item in findings.of(severity)]
-    chemistry = sum(name.endswith("_L") for name in survey.amounts)
+    chemistry = sum(str(name).endswith("_L") for name in survey.amounts)
     tables = f"{len(eh)} samples, {len(survey.stations)} stations, {len(survey.checks)} check readings"
     lines.append(f"{tables}, {chemistry} constituents; {int(eh['Eh_mV'].notna().sum())} samples with Eh.")
     return "\n".join([*lines, _severities(findings)])

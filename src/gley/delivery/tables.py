@@ -84,7 +84,7 @@ def _field_columns(result: Result) -> pd.DataFrame:
 
 def _amounts(result: Result) -> pd.DataFrame:
     amounts = result.survey.amounts
-    return amounts[[name for name in amounts if not name.endswith("_limit")]]
+    return amounts[[name for name in amounts if not str(name).endswith("_limit")]]
 
 
 def _coordinates(result: Result) -> pd.DataFrame:

@@ -137,7 +137,7 @@ def _chart(sheet: ChartSheet, folder: Path, dpi: int) -> None:
     if sheet.over is not None:
         drawn = drawn.over(sheet.over)
     drawn = drawn.points(sheet.points)
-    drawn.caption([f"Drawn at {sheet.reference}.", *sheet.notes, f"Data {data_version()}."])
+    drawn.caption([*sheet.notes, f"Drawn at {sheet.reference}. Data {data_version()}."])
     drawn.save(folder / "charts" / sheet.key, dpi=dpi)
     record = {
         "key": sheet.key,

@@ -15,12 +15,12 @@ _LINE_SPACING = 1.35
 
 
 def conditions_line(chart: Chart) -> str:
-    """`12 °C · total Fe 10 µmol/L (0.56 mg/L) · I 0.010 mol/L · C 5.0 mmol/L · fresh solids`."""
+    """`12 °C · total Fe 10 µmol/L (0.56 mg/L) · I 0.01 mol/L · C 5.0 mmol/L · fresh solids`."""
     stated = chart.conditions
     parts = [
         f"{stated.temperature_C:g}\u00a0°C",
         f"total\u00a0{chart.element}\u00a0{amount_text(stated.total_mol_L, chart.element)}",
-        f"I\u00a0{stated.ionic_strength_M:.3f}\u00a0mol/L",
+        f"I\u00a0{stated.ionic_strength_M:.2g}\u00a0mol/L",
     ]
     for name, total in stated.ligands_mol_L.items():
         tied = ", tied by Eh" if name == "S" and stated.sulfur == "tied" else ""

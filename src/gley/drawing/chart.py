@@ -25,6 +25,7 @@ _LEFT, _RIGHT, _TOP, _HEIGHT = 0.64, 0.56, 0.34, 4.15
 """Margins and height of the plot in a figure of its own, inches."""
 
 _UNDER_PT = 33.0
+_CAPTION_PT = 72.0 * (style.WIDTH_MM / 25.4 - _LEFT - 0.12)
 _LAYOUT_DPI = 144
 
 
@@ -75,6 +76,7 @@ class EphChart:
             raise RuntimeError(message)
         self._chart = chart
         self._title = title or style.element_name(chart.element)
+        self._titled = bool(title)
         low_pH, high_pH, low, high = self._window_V or chart.window
         self.window = (low_pH, high_pH, 1000.0 * low, 1000.0 * high)
         self._frame = shapely.box(low_pH, self.window[2], high_pH, self.window[3])
@@ -91,7 +93,10 @@ class EphChart:
         """A second element's lines over the first, its field names boxed."""
         self._ready()
         self._over = chart
+        if not self._titled:
+            self._title = f"{style.element_name(chart.element)} over {self._title.lower()}"
         with style.look():
+            self._set_title()
             layers.draw_lines(self.ax, chart.boundaries, self.ids, over=True)
         return self
 
@@ -133,7 +138,7 @@ class EphChart:
             with style.look():
                 if self._own:
                     self._place(style.WIDTH_MM / 25.4, 9.0)
-                under = Under(self.ax, _UNDER_PT)
+                under = Under(self.ax, _UNDER_PT, width_pt=_CAPTION_PT if self._own else None)
                 if self._lines is not None:
                     under.legend(self._handles())
                     under.caption(self._caption_lines())
@@ -176,7 +181,10 @@ class EphChart:
         pe.set_gid("axis-pe")
         for axis in (ax, pe):
             axis.tick_params(length=3.0, width=0.7)
-        ax.set_title(self._title, loc="left", fontsize=style.TITLE_PT, fontweight="bold", pad=5.0)
+        self._set_title()
+
+    def _set_title(self) -> None:
+        self.ax.set_title(self._title, loc="left", fontsize=style.TITLE_PT, fontweight="bold", pad=5.0)
 
     def _caption_lines(self) -> list[str]:
         assert self._chart is not None
@@ -188,7 +196,7 @@ class EphChart:
             lines.append(fan_line(low, high, seen=seen))
         if self._points is not None:
             lines.append(self._points.sentence(self.names.left_out if self.names else 0))
-        return [*lines, *(self._lines or []), made_by()]
+        return [*lines, *(self._lines or [made_by()])]
 
     def _handles(self) -> list:
         """Keys for the tints in sight, the marker shapes, the fan and the second element's lines."""
@@ -200,13 +208,11 @@ class EphChart:
         }
         if self._points is not None:
             states |= self._points.states()
-        ordered = sorted(states, key=lambda key: (key[0], style.oxidation_number(style.bare_state(key[1])), key[2]))
         found: list = [
-            Patch(fc=style.tint(*key), ec=style.LINE, lw=0.4, label=f"{style.state_text(key[1])} {key[2]}")
-            for key in ordered
+            Patch(fc=colour, ec=style.LINE, lw=0.4, label=label) for colour, label in style.key_of_tints(states)
         ]
         if self._fan is not None and self._fan[2]:
-            found.append(Patch(fc=(0, 0, 0, 0.13), ec=(0, 0, 0, 0.45), lw=0.4, label="P10–P90 of the total"))
+            found.append(Patch(fc=(0, 0, 0, 0.10), ec=(0, 0, 0, 0.45), lw=0.4, label="P10–P90 of the total"))
         if self._over is not None:
             found.append(Line2D([], [], color=style.OVER, lw=1.5, label=f"lines of {self._over.element}"))
         return found + (self._points.handles() if self._points is not None else [])

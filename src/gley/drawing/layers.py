@@ -91,7 +91,6 @@ def draw_lines(ax: Axes, boundaries: Iterable[Boundary], ids: Ids, *, over: bool
         points = mV(item.points)
         if over:
             look = {"lw": 1.5 if item.electrons else 1.1, "ls": look["ls"]}
-            ax.add_line(Line2D(*points.T, color="white", lw=look["lw"] + 1.2, alpha=0.7, zorder=Z_OVER - 0.1))
         gid = ids.new("over" if over else "boundary", "--".join(item.between))
         line = Line2D(
             *points.T, color=OVER if over else LINE, zorder=Z_OVER if over else Z_LINE, gid=gid,
@@ -150,7 +149,7 @@ def draw_fan(ax: Axes, low: Chart, high: Chart, window: shapely.Polygon, ids: Id
     if not parts:
         return False
     style = {"zorder": Z_FAN, "gid": ids.new("fan")}
-    ax.add_patch(PathPatch(path_of(parts), fc=(*_rgb(INK), 0.13), ec=(*_rgb(INK), 0.45), lw=0.4, **style))
+    ax.add_patch(PathPatch(path_of(parts), fc=(*_rgb(INK), 0.10), ec=(*_rgb(INK), 0.45), lw=0.4, **style))
     return True
 
 

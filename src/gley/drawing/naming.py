@@ -37,14 +37,14 @@ class Names:
         """Place everything on the axes of `chart`, whose visible fields are `shapes` (pH, mV)."""
         room = self.room
         for line in water.values():
-            room.line(line)
+            room.lines.append(room.path(line))
         if points is not None:
             self._take_points(points)
         for item in (over.boundaries if over else ()):
-            room.line(mV(item.points))
+            room.lines.append(room.path(mV(item.points)))
         own_lines = list(room.lines)
         for item in chart.boundaries:
-            room.line(mV(item.points))
+            room.lines.append(room.path(mV(item.points)))
         self._water_names(water)
         band = stable_water(water, window)
         prefer = self._to_pixels(band) if band is not None else None
@@ -64,10 +64,10 @@ class Names:
             return
         centres = self.room.pixels(points.shown[["pH", "Eh_mV"]].to_numpy(float))
         reach = (points.radius_pt + 0.5) * self.room.pt
-        self.room.take(*shapely.box(*(centres - reach).T, *(centres + reach).T))
+        self.room.markers.extend(shapely.box(*(centres - reach).T, *(centres + reach).T))
         if len(points.shown) <= _BAR_LIMIT:
             for bar in bar_ends(points.shown):
-                self.room.line(bar)
+                self.room.bars.append(self.room.path(bar))
 
     def _water_names(self, water: dict[str, np.ndarray]) -> None:
         for name, side in (("O2/H2O", 1), ("H2O/H2", -1)):
@@ -147,7 +147,7 @@ class Names:
             x, y, words.text, fontsize=words.size, rotation=words.angle, style=words.style, color=colour, ha="center",
             va="center", multialignment="center", zorder=Z_WORDS, gid=gid, bbox=box,
         )  # fmt: skip
-        self.room.take(spot.shape)
+        self.room.words.append(spot.shape)
         if spot.target is not None:
             self._leader(spot, colour if box else LINE, self.ids.new("leader", gid), dot=dot)
         return made
@@ -159,4 +159,4 @@ class Names:
         data = self.room.data(ends)
         look = {"marker": "o", "markevery": [1], "ms": 2.2} if dot else {}
         self.ax.add_line(Line2D(*data.T, color=colour, lw=0.5, zorder=Z_LEADER, gid=gid, **look))
-        self.room.take(shapely.LineString(ends))
+        self.room.words.append(shapely.LineString(ends))

@@ -11,7 +11,7 @@ MOST_LABELS = 40
 _ANGLES = np.deg2rad([0, 180, 30, 330, 150, 210, 60, 300, 120, 240, 90, 270, 15, 345, 165, 195, 45, 315, 135, 225])
 _REACH_PT = np.array([0.5, 3.0, 7.0, 12.0, 18.0, 26.0, 36.0, 48.0, 62.0, 78.0, 96.0])
 _LEADER_FROM_PT = 5.0
-_LINE, _LEADER, _CROSSING, _NEVER = 9.0, 6.0, 60.0, 1e6
+_LINE, _LEADER, _ALONG, _CROSSING, _NEVER = 34.0, 6.0, 40.0, 60.0, 1e6
 
 
 class _Candidates:
@@ -61,8 +61,9 @@ def label_points(room: Room, points: np.ndarray, names: list[str], radius: float
         _Candidates(room, word, point, radius, away)
         for word, point, away in zip(words, points, _away(points), strict=True)
     ]
+    edges = shapely.union_all(room.lines).buffer(room.pt) if room.lines else None
     for table in tables:
-        _fixed_cost(room, table, points, radius)
+        _fixed_cost(room, table, points, radius, edges)
     chosen: dict[int, int] = {}
     order = sorted(range(len(tables)), key=lambda i: (int((tables[i].cost < _NEVER).sum()), i))
     for _ in range(4):
@@ -96,12 +97,17 @@ def _away(points: np.ndarray) -> np.ndarray:
     return np.where(length > 1.0, pull / np.maximum(length, 1e-9), 0.0)
 
 
-def _fixed_cost(room: Room, table: _Candidates, points: np.ndarray, radius: float) -> None:
-    """Add what the axes, taken shapes, lines and other markers make of each candidate."""
+def _fixed_cost(room: Room, table: _Candidates, points: np.ndarray, radius: float, edges) -> None:
+    """Add what the axes, taken shapes, lines (`edges`, a strip along them) and other markers make of each candidate."""
     shapes = shapely.box(*table.boxes.T)
     table.cost += _NEVER * ~room.within(shapes)
     table.cost += _NEVER * room.blocked(shapes)
     table.cost += _LINE * room.crossed(shapes)
+    leaders = shapely.linestrings(np.stack([np.broadcast_to(table.point, table.ends.shape), table.ends], axis=1))
+    table.cost += 2 * _CROSSING * (table.far & room.over_words(leaders))
+    if edges is not None:
+        on_line = shapely.length(shapely.intersection(leaders, edges))
+        table.cost += _ALONG * (table.far & (on_line > 10.0 * room.pt))
     others = points[np.hypot(*(points - table.point).T) > 1e-9]
     if len(others):
         boxes = np.hstack([others - radius, others + radius])

@@ -43,8 +43,10 @@ class Room:
         x0, y0, x1, y1 = ax.get_window_extent().extents
         inset = GAP_PT * self.pt
         self.frame = np.array([x0 + inset, y0 + inset, x1 - inset, y1 - inset])
-        self.taken: list[shapely.Geometry] = []
+        self.markers: list[shapely.Geometry] = []
+        self.words: list[shapely.Geometry] = []
         self.lines: list[shapely.Geometry] = []
+        self.bars: list[shapely.Geometry] = []
         self._sizes: dict[Words, tuple[float, float]] = {}
 
     def pixels(self, points: np.ndarray) -> np.ndarray:
@@ -82,26 +84,31 @@ class Room:
         """Which shapes (n,) meet something taken."""
         return _meets(shapes, self.taken)
 
+    def over_words(self, shapes: np.ndarray) -> np.ndarray:
+        """Which shapes (n,) meet words or their leader lines."""
+        return _meets(shapes, self.words)
+
     def crossed(self, shapes: np.ndarray) -> np.ndarray:
-        """Which shapes (n,) meet a line."""
-        return _meets(shapes, self.lines)
+        """Which shapes (n,) meet a line or a bar."""
+        return _meets(shapes, [*self.lines, *self.bars])
 
     def air(self, shapes: np.ndarray) -> np.ndarray:
-        """Distance (n,) from each shape to the nearest taken thing; infinite where nothing is taken."""
+        """Distance (n,) from each shape to the nearest taken thing or line; infinite where there is none."""
         far = np.full(len(shapes), np.inf)
-        if self.taken and len(shapes):
-            found, distance = STRtree(self.taken).query_nearest(shapes, return_distance=True, all_matches=False)
+        others = [*self.taken, *self.lines, *self.bars]
+        if others and len(shapes):
+            found, distance = STRtree(others).query_nearest(shapes, return_distance=True, all_matches=False)
             far[found[0]] = distance
         return far
 
-    def take(self, *shapes: shapely.Geometry) -> None:
-        """Mark places as taken."""
-        self.taken.extend(shapes)
+    @property
+    def taken(self) -> list[shapely.Geometry]:
+        """Markers, words and leader lines: what no words may cover."""
+        return [*self.markers, *self.words]
 
-    def line(self, points: np.ndarray) -> None:
-        """Remember a line given in data coordinates (n, 2)."""
-        if len(points) > 1:
-            self.lines.append(shapely.LineString(self.pixels(points)))
+    def path(self, points: np.ndarray) -> shapely.LineString:
+        """A line given in data coordinates (n, 2), in pixels."""
+        return shapely.LineString(self.pixels(points))
 
 
 def _meets(shapes: np.ndarray, others: list) -> np.ndarray:

@@ -35,7 +35,7 @@ RC = {
     "mathtext.fontset": "dejavusans", "mathtext.default": "regular", "axes.labelsize": NAME_PT,
     "xtick.labelsize": SMALL_PT, "ytick.labelsize": SMALL_PT, "axes.linewidth": 0.8, "axes.edgecolor": INK,
     "text.color": INK, "axes.labelcolor": INK, "xtick.color": INK, "ytick.color": INK, "axes.unicode_minus": True,
-    "svg.hashsalt": "gley", "svg.fonttype": "path", "figure.dpi": 100.0, "text.usetex": False,
+    "svg.hashsalt": "gley", "svg.fonttype": "path", "figure.dpi": 100.0, "text.usetex": False, "text.hinting": "none",
     "figure.facecolor": "white", "savefig.facecolor": "white", "hatch.linewidth": 0.4,
 }  # fmt: skip
 
@@ -117,6 +117,15 @@ def field_colour(name: str) -> str | None:
     """Fill of the field a species names; None for a name that isn't in the species table."""
     state = field_state(name)
     return None if state is None else tint(*state)
+
+
+def key_of_tints(states: set[tuple[str, str, str]]) -> list[tuple[str, str]]:
+    """Colour and label of each tint among (element, state, kind), reduced first; states that share one share the label."""
+    ordered = sorted(states, key=lambda key: (oxidation_number(bare_state(key[1])), key[2], key[0]))
+    labels: dict[tuple[str, str], list[str]] = {}
+    for element, state, kind in ordered:
+        labels.setdefault((tint(element, state, kind), kind), []).append(state_text(state))
+    return [(colour, f"{', '.join(found)} {kind}") for (colour, kind), found in labels.items()]
 
 
 def shown_name(name: str, formula: str, kind: str) -> tuple[str, str]:

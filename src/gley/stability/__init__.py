@@ -8,9 +8,23 @@ from gley.stability.chart import chart, chart_at
 from gley.stability.chart_types import Boundary, Chart, Conditions, Field
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
 from gley.stability.reference import reference
-from gley.stability.water import beyond_water, water_lines
+from gley.stability.water import IMPLAUSIBLE_mV, beyond_water, water_lines
 
 __all__ = [
-    "CHART_ONLY", "OFFERED", "Boundary", "Chart", "Conditions", "Field", "assign", "beyond_water", "chart", "chart_at",
-    "check_names", "measured_elements", "reference", "species", "water_lines",
+    "CHART_ONLY",
+    "OFFERED",
+    "Boundary",
+    "Chart",
+    "Conditions",
+    "Field",
+    "IMPLAUSIBLE_mV",
+    "assign",
+    "beyond_water",
+    "chart",
+    "chart_at",
+    "check_names",
+    "measured_elements",
+    "reference",
+    "species",
+    "water_lines",
 ]  # fmt: skip

@@ -13,7 +13,7 @@ from gley.stability import certainty, margins
 from gley.stability.data import CHART_ONLY, OFFERED, check_names
 from gley.stability.solve import Choice, Solved, solve
 from gley.stability.systems import System, away_from_25
-from gley.stability.water import DIC_MIN_PH
+from gley.stability.water import DIC_MIN_PH, IMPLAUSIBLE_mV, beyond_water
 from gley.stability.waters import LIGAND_INPUTS, MAX_IONIC_STRENGTH_M, Waters, waters
 
 BLOCK = 8192
@@ -138,6 +138,8 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
         say(no_sulfide, "sulfide not measured: total is sulfate alone")
     for name in [item.name for item in target.members if item.only_at_25]:
         say(away_from_25(ready.X), f"{name} left out: known at 25 °C only")
+    beyond = np.abs(beyond_water(ready.pH, ready.Eh_mV, ready.temperature_C))
+    say(beyond > IMPLAUSIBLE_mV, "Eh outside water's stability: not to be used")
     strong = ready.ionic_strength_M > MAX_IONIC_STRENGTH_M
     say(strong, f"ionic strength above {MAX_IONIC_STRENGTH_M:g} M: activities uncertain")
     return status

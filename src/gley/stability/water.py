@@ -17,6 +17,9 @@ FEATURES = ("1", "1/T0 − 1/T", "ln(T/T0) + T0/T − 1", "pH", "log a_w", "Davi
 
 _CORE_IONS = ("Ca", "Mg", "Na", "Cl", "SO4")
 _CONDUCTIVITY_FACTOR = 1.6e-5  # mol/L per µS/cm at 25 °C: Russell 1976, in Standard Methods 2330 (from memory)
+IMPLAUSIBLE_mV = 100.0
+"""A potential further than this outside water's stability can't be a reading of a water at rest (common practice)."""
+
 DIC_MIN_PH = 4.5
 """Below the end point of the alkalinity titration alkalinity says nothing about inorganic carbon."""
 

@@ -28,11 +28,11 @@ RULED = {"Samples": 27, "Stations": 23, "Checks": 15}
 
 FIELD = (
     "sample", "station", "round", "date", "time", "sample_type", "duplicate_of", "depth_cm", "water_level_m", "probe",
-    "electrode", "ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "remarks",
+    "electrode", "ORP_mV", "temperature_C", "pH", "SC_uS_cm", "O2", "remarks",
 )  # fmt: skip
 LABORATORY = (
-    "alkalinity", "Fe_II", "sulfide", "Fe", "Mn", "NO3", "NO2", "NH4", "SO4", "Cl", "PO4", "F", "Ca", "Mg", "Na", "K",
-    "DOC", "CH4", "As", "As_III", "U", "Cr", "Cr_VI", "Se", "Cu",
+    "pH_lab", "alkalinity", "Fe_II", "sulfide", "Fe", "Mn", "NO3", "NO2", "NH4", "SO4", "Cl", "PO4", "F", "Ca", "Mg",
+    "Na", "K", "DOC", "CH4", "As", "As_III", "U", "Cr", "Cr_VI", "Se", "Cu",
 )  # fmt: skip
 UNITS = {
     "alkalinity": "mg/L as CaCO3", "NO3": "mg/L as N", "NO2": "mg/L as N", "NH4": "mg/L as N", "PO4": "mg/L as P",
@@ -60,7 +60,6 @@ FACTS = {
 _FILLED = {"Purpose": "redox survey, ORP and pH with chemistry"}
 LISTS = {
     "sample_type": ("normal", "duplicate", "blank", "spike"),
-    "pH_where": ("field", "laboratory"),
     "solution": ("ZoBell", "Light", "quinhydrone pH 4", "quinhydrone pH 7"),
 }
 """Choices that are short enough to stand in the check itself."""
@@ -82,7 +81,7 @@ _WIDTHS = {
     "remarks": 28,
     "crs": 13,
 }
-_READINGS = frozenset({"ORP_mV", "temperature_C", "pH", "pH_where", "SC_uS_cm", "O2", "reading_mV"})
+_READINGS = frozenset({"ORP_mV", "temperature_C", "pH", "SC_uS_cm", "O2", "reading_mV"})
 _LAST_ROW = 1048576  # of any sheet
 _MADE = (2026, 1, 1, 0, 0, 0)
 
@@ -209,7 +208,7 @@ def _table(sheet: Worksheet, heads: list[_Head], ranges: dict[str, str]) -> None
 def _heading(sheet: Worksheet, c: int, head: _Head) -> None:
     top, below = sheet.cell(1, c, head.name), sheet.cell(2, c, head.unit or None)
     top.font, top.border, below.border = _font(bold=True), _BOX, _BOX
-    top.fill = _LAB if head.dtype == "amount" and head.name != "O2" else _READ if head.name in _READINGS else _WHO
+    top.fill = _LAB if head.name in LABORATORY else _READ if head.name in _READINGS else _WHO
     below.font, below.fill = _font(italic=True, color=_PALE), _UNIT
     top.alignment = below.alignment = Alignment(horizontal="center", vertical="center")
     note = Comment(_note(head), "gley")
@@ -260,7 +259,7 @@ def _rule(head: _Head, first: str, ranges: dict[str, str]) -> DataValidation | N
     if head.name in ranges:
         words = "Not in the list on the sheet How to. Keep it if it is what the label says."
         error = words if head.name == "electrode" else None
-        return DataValidation("list", formula1=f"={ranges[head.name]}", errorStyle="warning", error=error)
+        return DataValidation("list", formula1=ranges[head.name], errorStyle="warning", error=error)
     if head.name == "sample":
         once = f"COUNTIF($A$3:$A${ROWS + 2},{first})=1"
         return DataValidation("custom", formula1=once, errorStyle="warning", error="This name is in use already.")
