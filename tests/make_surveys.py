@@ -1,14 +1,15 @@
 """Makes `sample_surveys/` and the truth behind them: invented sites, seeded, with faults planted on purpose.
 
-Run as a script to write them; `tests/test_surveys.py` compares. Eh comes from written-out couples, independent of the tool:
+Run as a script to write them; `tests/test_surveys.py` compares. Eh comes from written-out couples, independent of the
+tool:
 
     Fe(OH)3 + 3 H+ + e- = Fe2+ + 3 H2O      pe = 16.54 - 3 pH - log[Fe2+]            (Kirk 2004, submerged soils)
     SO4-- + 9 H+ + 8 e- = HS- + 4 H2O       pe = (34.0 - 9 pH - log[HS-] + log[SO4--]) / 8    (same)
     oxic water                              a mixed potential, drawn near 400 mV (common practice)
 
-Eh = pe · 2.303 RT/F, then noise of the stated standard deviation, then back to ORP with the reference electrode at the
-temperature (3 M KCl: 207 - 0.7 (t - 25) mV, ISO 11271; saturated calomel: 244.4 - 0.67 (t - 25) mV, Sawyer 1995) and the
-probe's own deviation, which the check readings show (ZoBell: Nordstrom 1977).
+Eh = pe * 2.303 RT/F, then noise of the stated standard deviation, then back to ORP with the reference electrode at the
+temperature (3 M KCl: 207 - 0.7 (t - 25) mV, ISO 11271; saturated calomel: 244.4 - 0.67 (t - 25) mV, Sawyer 1995) and
+the probe's own deviation, which the check readings show (ZoBell: Nordstrom 1977).
 """
 
 import csv

@@ -3,9 +3,10 @@
 import csv
 from pathlib import Path
 
-import make_surveys
 import openpyxl
 import pytest
+
+import make_surveys
 
 TOP = Path(__file__).parents[1]
 

@@ -46,7 +46,7 @@ def run_summary(result: Result, folder: Path) -> str:
     processes = result.evidence["redox_process"].replace("", "not told").value_counts()
     lines.append("Redox process: " + ", ".join(f"{name} {count}" for name, count in processes.items()))
     lines.append(_severities(result.findings))
-    lines.append(f"Written to {folder}: report.html, samples.xlsx, samples.gpkg, charts, maps and tables.")
+    lines.append(f"Written to {folder}; open {folder / 'report.html'}.")
     return "\n".join(lines)
 
 

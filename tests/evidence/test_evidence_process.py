@@ -1,6 +1,6 @@
 """The redox process against the published framework, row by row.
 
-Table: McMahon & Chapelle 2008, Ground Water 46: 259-271, table 1, with the iron/sulfide ratio of Chapelle and others 2009,
+McMahon & Chapelle 2008, Ground Water 46: 259-271, table 1, with the iron/sulfide ratio of Chapelle and others 2009,
 Ground Water 47: 300-305 (thresholds from memory, ratio limits seen).
 """
 

@@ -1,10 +1,12 @@
 """The report: one self-contained HTML page, plain and complete, that prints well."""
 
 import base64
+import re
 from html import escape
 from importlib.resources import files
 from pathlib import Path
 
+import numpy as np
 import pandas as pd
 
 from gley import __version__
@@ -12,7 +14,7 @@ from gley.delivery.result import Result
 from gley.delivery.stamp import data_version
 from gley.delivery.tables import short_table
 from gley.formula import markup
-from gley.stability import species
+from gley.stability import IMPLAUSIBLE_mV, beyond_water, species
 
 CAUTIONS = (
     "Platinum shows a mixed potential: it follows the fastest of the couples present and is blind to O2 and NO3.",
@@ -25,6 +27,7 @@ CAUTIONS = (
     "This page supports, and doesn't replace, the judgement of licensed professionals and the local codes that apply.",
 )
 
+_PLAIN_FORMULA = re.compile(r"\b(?:O2|NO3|NO2|NH4|SO4|HCO3|H2S|CH4|H2O|CO2)\b")
 _SEVERITIES = {"error": "Errors", "warning": "Warnings", "note": "Notes"}
 _FIELD_COLUMNS = (
     "sample", "field", "outcome", "probability", "dissolved_form", "share", "saturation", "solid", "SI", "next_field",
@@ -49,7 +52,7 @@ def page(result: Result, folder: Path) -> str:
         [
             _head(result, title),
             _summary(result),
-            _section("Cautions", "<ul>" + "".join(f"<li>{escape(text)}</li>" for text in CAUTIONS) + "</ul>"),
+            _section("Cautions", "<ul>" + "".join(f"<li>{chemical(text)}</li>" for text in CAUTIONS) + "</ul>"),
             _pictures(result, folder, "charts", "E–pH charts"),
             _pictures(result, folder, "maps", "Site maps"),
             _section(
@@ -90,7 +93,7 @@ def chemical(text: str) -> str:
     if text in species() and species()[text].dissolved:
         return markup(species()[text].formula)
     words = [markup(escape(word)) if "^" in word else escape(word) for word in text.split(" ")]
-    return " ".join(words)
+    return _PLAIN_FORMULA.sub(lambda found: markup(found.group(0)), " ".join(words))
 
 
 def _section(title: str, inner: str) -> str:
@@ -116,7 +119,7 @@ def _summary(result: Result) -> str:
     eh = result.eh["Eh_mV"]
     parts = [f"<p>{len(eh)} samples, {int(eh.notna().sum())} with Eh on the hydrogen scale"]
     if eh.notna().any():
-        parts.append(f", from {eh.min():.0f} to {eh.max():.0f} mV")
+        parts.append(f", {_span(result)}")
     counted = result.findings.counts()
     parts.append(
         f". {counted['error']} errors, {counted['warning']} warnings and {counted['note']} notes on the data.</p>"
@@ -129,6 +132,18 @@ def _summary(result: Result) -> str:
         blocks.append(count.reset_index(name="samples"))
     inner = "".join(parts) + '<div class="side">' + "".join(table(block) for block in blocks if len(block)) + "</div>"
     return _section("Summary", inner)
+
+
+def _span(result: Result) -> str:
+    """Range of Eh in words, potentials that no water can have left aside and counted."""
+    pH, Eh = (result.survey.samples["pH"], result.eh["Eh_mV"])
+    beyond = np.abs(
+        beyond_water(pH.to_numpy(float), Eh.to_numpy(float), result.eh["temperature_used_C"].to_numpy(float))
+    )
+    wrong = beyond > IMPLAUSIBLE_mV
+    kept = Eh[~wrong].dropna()
+    text = f"from {kept.min():.0f} to {kept.max():.0f} mV" if len(kept) else "none believable"
+    return text + (f" ({int(wrong.sum())} outside water's stability left aside)" if wrong.any() else "")
 
 
 def _pictures(result: Result, folder: Path, kind: str, title: str) -> str:

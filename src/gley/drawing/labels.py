@@ -45,7 +45,7 @@ def field_spot(room: Room, shape: shapely.Polygon, variants: list[Words], prefer
     Spot or None
         Of the first variant that fits clear of everything (level, then turned along a narrow field); None when none does.
     """
-    inner = shape.buffer(-room.pt)
+    inner = shape.buffer(-0.3 * room.pt)
     if inner.is_empty:
         return None
     inner = max(shapely.get_parts(inner), key=lambda part: part.area)
@@ -112,10 +112,10 @@ def pole(shape: shapely.Polygon) -> tuple[float, float]:
     return float(x), float(y)
 
 
-def beside_spot(room: Room, target: tuple[float, float], variants: list[Words]) -> Spot | None:
+def beside_spot(room: Room, target: tuple[float, float], variants: list[Words]) -> tuple[float, Spot] | None:
     """Room near a place that has none itself: words with a leader line to `target` (pixels), free of all that is taken.
 
-    A place on a line costs more than one further off; None when the whole axes is full.
+    Returns its cost with it: length of the leader in pt, and more on a line; None when the whole axes is full.
     """
     best: tuple[float, Spot] | None = None
     angles = np.deg2rad(np.arange(0, 360, 12))
@@ -127,13 +127,13 @@ def beside_spot(room: Room, target: tuple[float, float], variants: list[Words]) 
         shapes = room.shapes(words, centres)
         leaders = shapely.shortest_line(shapes, shapely.Point(target))
         free = room.within(shapes) & ~room.blocked(shapes) & ~room.blocked(leaders)
-        cost = shapely.length(leaders) / room.pt + 90.0 * room.crossed(shapes) + 4.0 * rank
+        cost = shapely.length(leaders) / room.pt + 140.0 * room.crossed(shapes) + 4.0 * rank
         cost = np.where(free, np.round(cost, 6), np.inf)
         k = int(cost.argmin())
         if np.isfinite(cost[k]) and (best is None or cost[k] < best[0]):
             spot = Spot(words, (float(centres[k, 0]), float(centres[k, 1])), shapes[k], target)
             best = (float(cost[k]), spot)
-    return best[1] if best else None
+    return best
 
 
 def line_spot(room: Room, line: np.ndarray, text: str, side: int) -> Spot | None:

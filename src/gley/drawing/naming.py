@@ -96,7 +96,7 @@ class Names:
             elif n == 0 and part.area > _SMALLEST_PT2 * self.room.pt**2:
                 waiting.append((item, part, variants))
         for item, part, variants in waiting:
-            spot = beside_spot(self.room, self._target(part), [w for w in variants if w.text.count("\n") < 2])
+            spot = self._beside(part, [words for words in variants if words.text.count("\n") < 2])
             if spot is None:
                 self.unnamed_fields.append(item.name)
             else:
@@ -109,6 +109,17 @@ class Names:
             return field_spot(self.room, part, variants, prefer)
         finally:
             self.room.lines = kept
+
+    def _beside(self, part: shapely.Polygon, variants) -> Spot | None:
+        """The shortest clear leader line to the middle of the field or of either half of it."""
+        x0, y0, x1, y1 = part.bounds
+        x, y = ((x0 + x1) / 2, y1) if x1 - x0 > y1 - y0 else (x1, (y0 + y1) / 2)
+        first = shapely.box(x0, y0, x, y)
+        halves = [polygons_of(cut) for cut in (shapely.intersection(part, first), shapely.difference(part, first))]
+        targets = [self._target(shape) for shape in (part, *(found[0] for found in halves if found))]
+        spots = [beside_spot(self.room, target, variants) for target in targets]
+        found = [(cost + 6.0 * rank, spot) for rank, (cost, spot) in enumerate(s for s in spots if s is not None)]
+        return min(found, key=lambda entry: entry[0])[1] if found else None
 
     def _target(self, part: shapely.Polygon) -> tuple[float, float]:
         """Where a leader line ends: the middle of the field, or the nearest place to it that no marker covers."""

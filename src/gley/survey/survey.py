@@ -147,10 +147,10 @@ def _composed(row: Record) -> str:
     parts = [str(row.cells.get("station", ""))]
     if row.cells.get("round"):
         parts.append(str(row.cells["round"]))
-    elif row.cells.get("date") is not None:
-        parts.append(row.cells["date"].date().isoformat())
     if row.cells.get("depth_cm") is not None:
         parts.append(f"{row.cells['depth_cm']:g} cm")
+    if len(parts) == 1 and row.cells.get("date") is not None:
+        parts.append(row.cells["date"].date().isoformat())
     parts = [part for part in parts if part]
     return " ".join(parts) or f"row {row.home.cell.lstrip('ABCDEFGHIJKLMNOPQRSTUVWXYZ')}"
 
