@@ -287,7 +287,7 @@ def wetland():
                 comma(f"{5921004.0 + 4 * plot:.1f}"), str(depth), *cells, comma(f"{pH:.1f}"), comma(f"{t:.1f}"),
             ]))  # fmt: skip
             truth.append(
-                (f"{name} 2031-05-14 {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), "")
+                (f"{name} {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), "")
             )
     return lines, truth
 
