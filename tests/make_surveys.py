@@ -286,9 +286,7 @@ def wetland():
                 name, "14.05.2031", f"{9 + plot}:{10 + 8 * k:02d}", comma(f"{548210.5 + 18 * plot:.1f}"),
                 comma(f"{5921004.0 + 4 * plot:.1f}"), str(depth), *cells, comma(f"{pH:.1f}"), comma(f"{t:.1f}"),
             ]))  # fmt: skip
-            truth.append(
-                (f"{name} {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), "")
-            )
+            truth.append((f"{name} {depth} cm", "below" if below > 0.5 else "above", round(float(Eh), 1), ""))
     return lines, truth
 
 

@@ -9,7 +9,7 @@ import gley
 
 SOURCE = Path(gley.__file__).parent
 FILES = sorted(SOURCE.rglob("*.py"))
-FOUNDATION = ("errors", "constants", "formula", "columns", "units", "findings", "settings")
+FOUNDATION = ("errors", "constants", "formula", "columns", "units", "findings", "settings", "jsonform")
 ROOMS = ("survey", "probe", "stability", "evidence", "site", "drawing", "delivery")
 TOP = ("charts", "pipeline", "wording", "cli")
 ORDER = {name: level for level, name in enumerate((*ROOMS, *TOP), start=1)} | dict.fromkeys(FOUNDATION, 0)

@@ -4,7 +4,6 @@ stdout carries the answer, stderr notes and progress. Exit: 0 done (warnings too
 an error. Heavy imports happen inside the commands, so that help is quick.
 """
 
-import json
 import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
@@ -14,6 +13,7 @@ import typer
 
 from gley import __version__
 from gley.errors import GleyError, UsageError
+from gley.jsonform import to_json
 
 # the parser's own complaint about a call; typer shows its class under another name from release to release
 _ParserError: type[Exception] = next(item for item in typer.BadParameter.__mro__ if item.__name__ == "ClickException")
@@ -228,11 +228,8 @@ def main(argv: Sequence[str] | None = None) -> int:
             raise
         return _fail(error.message, error.cure, 2 if isinstance(error, UsageError) else 1)
     except _ParserError as error:
-        return _fail(
-            str(getattr(error, "format_message", lambda: error)()),
-            "`gley --help` lists commands, `gley COMMAND --help` their options.",
-            2,
-        )
+        said = getattr(error, "format_message", error.__str__)()
+        return _fail(said, "`gley --help` lists commands, `gley COMMAND --help` their options.", 2)
     except (typer.Abort, KeyboardInterrupt):
         return _fail("stopped.", "", 1)
     except Exception as error:
@@ -255,21 +252,8 @@ def _print(text: str) -> None:
 
 
 def _answer(as_json: bool, record: Callable[[], Any], text: Callable[[], str]) -> None:
-    """The answer on stdout, in one of its two forms; NaN becomes null."""
-    _print(json.dumps(_plain(record()), ensure_ascii=False, indent=1, allow_nan=False) if as_json else text())
-
-
-def _plain(value: Any) -> Any:
-    """JSON-ready copy: NaN and infinities as null, numpy scalars as Python ones."""
-    if isinstance(value, dict):
-        return {str(key): _plain(part) for key, part in value.items()}
-    if isinstance(value, (list, tuple)):
-        return [_plain(part) for part in value]
-    if hasattr(value, "item"):
-        value = value.item()
-    if isinstance(value, float) and (value != value or value in (float("inf"), float("-inf"))):
-        return None
-    return value if isinstance(value, (str, int, float, bool, type(None))) else str(value)
+    """The answer on stdout, in one of its two forms."""
+    _print(to_json(record()) if as_json else text())
 
 
 def _tell(text: str) -> None:

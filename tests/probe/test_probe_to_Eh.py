@@ -11,19 +11,7 @@ from gley.errors import UsageError
 from gley.findings import Findings, Place
 from gley.probe import to_Eh
 from gley.settings import Settings
-
-
-def table(kind, rows):
-    made = {}
-    for name, column in columns(kind).items():
-        values = [row.get(name) for row in rows]
-        if column.dtype == "number":
-            made[name] = pd.Series([np.nan if v is None else v for v in values], dtype=float)
-        elif column.dtype == "date":
-            made[name] = pd.Series(pd.to_datetime(pd.Series(values, dtype=object)), dtype="datetime64[ns]")
-        else:
-            made[name] = pd.Series(["" if v is None else v for v in values], dtype=object)
-    return pd.DataFrame(made)
+from tables import table
 
 
 def survey(samples, checks=(), stations=(), facts=None, amounts=None):

@@ -2,26 +2,13 @@
 
 from types import SimpleNamespace
 
-import numpy as np
-import pandas as pd
 import pytest
 
-from gley.columns import columns
 from gley.errors import UsageError
 from gley.findings import Findings
 from gley.settings import Settings
 from gley.site import places
-
-
-def table(kind, rows):
-    made = {}
-    for name, column in columns(kind).items():
-        values = [row.get(name) for row in rows]
-        if column.dtype == "number":
-            made[name] = pd.Series([np.nan if v is None else v for v in values], dtype=float)
-        else:
-            made[name] = pd.Series(["" if v is None else v for v in values], dtype=object)
-    return pd.DataFrame(made)
+from tables import table
 
 
 def locate(samples, stations=(), facts=None, crs=""):

@@ -241,7 +241,8 @@ SAMPLES = (
 STATIONS = (
     {"station": "KB1", "x_m": 412350, "y_m": 5711220, "crs": "EPSG:25832", "ground_elevation_m": 61.3,
      "screen_top_m": 4, "screen_bottom_m": 6, "aquifer": "upper sand", "remarks": "by the ditch"},
-    {"station": "KB2", "latitude_deg": 51.5448, "longitude_deg": 7.7351},
+    {"station": "KB2", "x_m": 412410, "y_m": 5711260, "crs": "EPSG:25832", "electrode": "Ag/AgCl, 3.5 M KCl"},
+    {"station": "KB3", "latitude_deg": 51.5448, "longitude_deg": 7.7351},
 )  # fmt: skip
 CHECKS = (
     {"date": dt.date(2031, 4, 28), "time": dt.time(8, 30), "probe": "P1", "solution": "ZoBell", "temperature_C": 12,

@@ -1,12 +1,9 @@
 """Everything a run delivers, in order: tables, GIS layers, charts, maps, report, stamp."""
 
-import json
-import math
 from pathlib import Path
 from typing import Any
 
 import geopandas
-import numpy as np
 import pandas as pd
 from openpyxl.styles import Font, PatternFill
 from openpyxl.utils import get_column_letter
@@ -18,6 +15,7 @@ from gley.delivery.stamp import data_version, made_at, stamp
 from gley.delivery.tables import boundary_table, finding_table, printed, sample_table
 from gley.drawing import EphChart, SiteMap
 from gley.errors import GleyError
+from gley.jsonform import to_json
 from gley.stability import Chart
 
 
@@ -67,18 +65,7 @@ def _csv(frame: pd.DataFrame, path: Path) -> None:
 
 
 def _json(record: Any, path: Path) -> None:
-    path.write_text(json.dumps(_plain(record), ensure_ascii=False, indent=1, allow_nan=False) + "\n", encoding="utf-8")
-
-
-def _plain(value: Any) -> Any:
-    """JSON-ready: no NaN, no numpy."""
-    if isinstance(value, dict):
-        return {str(key): _plain(part) for key, part in value.items()}
-    if isinstance(value, (list, tuple)):
-        return [_plain(part) for part in value]
-    if isinstance(value, np.generic):
-        value = value.item()
-    return None if isinstance(value, float) and not math.isfinite(value) else value
+    path.write_text(to_json(record) + "\n", encoding="utf-8")
 
 
 def _workbook(result: Result, samples: pd.DataFrame, path: Path) -> None:

@@ -74,19 +74,20 @@ def half_cells() -> MappingProxyType:
 
 def electrodes() -> list[dict[str, Any]]:
     """The table as plain values: name, potential at 25 °C [mV], published range [°C], source, seen, grade, note."""
-    return [
-        {
-            "name": item.name,
-            "E_25C_mV": float(item.at(np.array([25.0]))[0][0]),
-            "T_min_C": float(item.T_C[0]),
-            "T_max_C": float(item.T_C[-1]),
-            "source": "; ".join(item.sources),
-            "seen": item.seen,
-            "grade": item.grade,
-            "note": item.note,
-        }
-        for item in half_cells().values()
-    ]
+    return [{**described(item), "E_25C_mV": float(item.at(np.array([25.0]))[0][0])} for item in half_cells().values()]
+
+
+def described(item: Curve) -> dict[str, Any]:
+    """A curve as plain values: name, published range [°C], source, seen, grade, note."""
+    return {
+        "name": item.name,
+        "T_min_C": float(item.T_C[0]),
+        "T_max_C": float(item.T_C[-1]),
+        "source": "; ".join(item.sources),
+        "seen": item.seen,
+        "grade": item.grade,
+        "note": item.note,
+    }
 
 
 def reference_mV(electrode: str, temperature_C: float) -> float:

@@ -5,7 +5,7 @@ from functools import cache
 from types import MappingProxyType
 from typing import Any
 
-from gley.probe.electrodes import read_curves
+from gley.probe.electrodes import described, read_curves
 
 
 @cache
@@ -16,18 +16,7 @@ def curves() -> MappingProxyType:
 
 def solutions() -> list[dict[str, Any]]:
     """The table as plain values: name, published range [°C], source, seen, grade, note."""
-    return [
-        {
-            "name": item.name,
-            "T_min_C": float(item.T_C[0]),
-            "T_max_C": float(item.T_C[-1]),
-            "source": "; ".join(item.sources),
-            "seen": item.seen,
-            "grade": item.grade,
-            "note": item.note,
-        }
-        for item in curves().values()
-    ]
+    return [described(item) for item in curves().values()]
 
 
 def find_solution(text: str) -> str:
