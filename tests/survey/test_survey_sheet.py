@@ -230,7 +230,7 @@ SAMPLES = (
         "sample": "KB2-A", "station": "KB2", "round": "spring", "date": dt.date(2031, 4, 28), "time": dt.time(11, 5),
         "sample_type": "normal", "probe": "P1", "electrode": NAMES[1], "ORP_mV": -118, "temperature_C": 11.0,
         "pH_lab": 7.2, "SC_uS_cm": 810, "O2": 0.1, "Fe": 2.1, "Fe_II": 2.0, "Mn": 0.62, "NO3": "<0.2",
-        "SO4": 27, "sulfide": "<0.05", "As": 14, "As_III": 9.5,
+        "SO4": 27, "sulfide": "<0.05", "As": 14, "As_III": 9.5, "Cr_VI": 3,
     },
     {
         "sample": "KB2-B", "station": "KB2", "round": "spring", "date": dt.date(2031, 4, 28), "time": dt.time(11, 20),
@@ -286,6 +286,16 @@ def test_every_cell_of_the_tables_arrives(survey, kind, rows):
                 assert got[name] == wanted, name
 
 
+def test_what_a_unit_weighs_is_said_where_it_could_be_two_things(book):
+    sheet = book["Samples"]
+    for name, c in heads(sheet).items():
+        item = constituents().get(name)
+        if item and (len(item.formula.split("^")[0]) > 2 or name == "sulfide"):
+            weighed = recognise(sheet.cell(2, c).value).basis
+            # one reading only: sulfate is never given as S in a water analysis, gases are weighed whole
+            assert weighed or name in ("SO4", "O2", "CH4"), name
+
+
 def test_chemistry_arrives_with_limits_units_and_places(survey):
     amounts, reported = survey.amounts, survey.reported
     # molar masses (IUPAC 2021) in the words of a calculator
@@ -295,6 +305,8 @@ def test_chemistry_arrives_with_limits_units_and_places(survey):
     assert amounts["alkalinity_eq_L"][0] == pytest.approx(3.697e-3, rel=1e-3)
     assert amounts["sulfide_mol_L"][1] == pytest.approx(0.05e-3 / 32.06, rel=1e-3)
     assert amounts["Fe_II_mol_L"][1] == pytest.approx(2.0e-3 / 55.845, rel=1e-4)
+    assert amounts["As_III_mol_L"][1] == pytest.approx(9.5e-6 / 74.922, rel=1e-4)
+    assert amounts["Cr_VI_mol_L"][1] == pytest.approx(3e-6 / 51.996, rel=1e-4)
     assert reported["As_ug_L"].tolist() == ["<0.5", "14", "15"]
     assert reported["NO3_mg_L_as_N"].tolist() == ["6.4", "<0.2", ""]
     letter = openpyxl.utils.get_column_letter((*form.FIELD, *form.LABORATORY).index("As") + 1)

@@ -50,7 +50,8 @@ def names_text(names: Sequence[str], most: int = 4) -> str:
     """` (A, B, C …)`: a few names in brackets, nothing for none."""
     if not names:
         return ""
-    return f" ({', '.join(names[:most])}{' …' if len(names) > most else ''})"
+    shown = ", ".join(name.replace("$", r"\$") for name in names[:most])
+    return f" ({shown}{' …' if len(names) > most else ''})"
 
 
 def plural(count: int, word: str) -> str:
@@ -59,7 +60,7 @@ def plural(count: int, word: str) -> str:
 
 
 class Under:
-    """The strip under an axes: a legend, then a caption. Heights in points, measured from the lower edge of the axes."""
+    """The strip under an axes: a legend, then a caption. Heights in points from the lower edge of the axes."""
 
     def __init__(self, ax: Axes, start_pt: float, left_pt: float = 0.0, width_pt: float | None = None) -> None:
         self.ax, self.depth, self.left = ax, start_pt, left_pt

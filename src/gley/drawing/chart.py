@@ -84,7 +84,8 @@ class EphChart:
             self._axes(chart)
             self._shapes = {item.name: layers.field_shape(item, self._frame) for item in chart.fields}
             for item in chart.fields:
-                layers.draw_field(self.ax, chart.element, item, self._shapes[item.name], self.ids.new("field", item.name))
+                gid = self.ids.new("field", item.name)
+                layers.draw_field(self.ax, chart.element, item, self._shapes[item.name], gid)
             layers.draw_lines(self.ax, chart.boundaries, self.ids)
             self._water = layers.draw_water(self.ax, chart, self.window, self.ids)
         return self
@@ -175,7 +176,9 @@ class EphChart:
         ax.xaxis.set_major_locator(MultipleLocator(1.0 if right - left > 4 else 0.5))
         ax.yaxis.set_major_locator(MaxNLocator(8, steps=[1, 2, 5, 10]))
         per_pe = float(nernst_slope_mV(chart.conditions.temperature_C))
-        pe = ax.secondary_yaxis("right", functions=(lambda E: E / per_pe, lambda value: value * per_pe))
+        pe = ax.secondary_yaxis(
+            "right", functions=(lambda E: np.asarray(E) / per_pe, lambda value: np.asarray(value) * per_pe)
+        )
         pe.set_ylabel(f"pe at {chart.conditions.temperature_C:g} °C")
         pe.yaxis.set_major_locator(MaxNLocator(8, integer=True, steps=[1, 2, 5, 10]))
         pe.set_gid("axis-pe")
@@ -216,5 +219,3 @@ class EphChart:
         if self._over is not None:
             found.append(Line2D([], [], color=style.OVER, lw=1.5, label=f"lines of {self._over.element}"))
         return found + (self._points.handles() if self._points is not None else [])
-
-

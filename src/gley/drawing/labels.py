@@ -1,4 +1,4 @@
-"""Where the names of fields and lines go: inside their field, clear of points, lines and other names, else pointing to it."""
+"""Where the names of fields and lines go: inside their field, clear of all else, or beside it and pointing to it."""
 
 import numpy as np
 import shapely
@@ -26,7 +26,9 @@ def _stacked(name: str, formula: str) -> str:
     return "\n".join([*name.split(" "), formula])
 
 
-def field_spot(room: Room, shape: shapely.Polygon, variants: list[Words], prefer: shapely.Polygon | None) -> Spot | None:
+def field_spot(
+    room: Room, shape: shapely.Polygon, variants: list[Words], prefer: shapely.Polygon | None
+) -> Spot | None:
     """Room for a name inside its field.
 
     Parameters
@@ -43,14 +45,14 @@ def field_spot(room: Room, shape: shapely.Polygon, variants: list[Words], prefer
     Returns
     -------
     Spot or None
-        Of the first variant that fits clear of everything (level, then turned along a narrow field); None when none does.
+        Of the first variant that fits clear of everything, level or turned along a narrow field; None when none does.
     """
     inner = shape.buffer(-0.3 * room.pt)
     if inner.is_empty:
         return None
     inner = max(shapely.get_parts(inner), key=lambda part: part.area)
     angle = _long_angle(inner)
-    turned = [Words(w.text, w.size, angle, w.style, w.weight) for w in variants] if angle is not None else []
+    turned = [Words(w.text, w.size, angle, w.style) for w in variants] if angle is not None else []
     turned = [words for words in turned if words.text.count("\n") < 2]
     split = next((k for k, words in enumerate(variants) if words.size <= SMALL_PT), len(variants))
     for words in (*variants[:split], *turned[:split], *variants[split:], *turned[split:]):
@@ -75,7 +77,9 @@ def _long_angle(shape: shapely.Polygon) -> float | None:
     return 90.0 if abs(abs(angle) - 90.0) < 6.0 else (None if abs(angle) < 4.0 else round(angle, 2))
 
 
-def _best(room: Room, inner: shapely.Polygon, words: Words, prefer: shapely.Polygon | None) -> tuple[float, float] | None:
+def _best(
+    room: Room, inner: shapely.Polygon, words: Words, prefer: shapely.Polygon | None
+) -> tuple[float, float] | None:
     """The centre with most air around, if there is any free one."""
     centres = _grid(inner, room.size(words))
     shapes = room.shapes(words, centres)
@@ -137,7 +141,7 @@ def beside_spot(room: Room, target: tuple[float, float], variants: list[Words]) 
 
 
 def line_spot(room: Room, line: np.ndarray, text: str, side: int) -> Spot | None:
-    """Room for a name along a straight line (2, 2) in pixels, above (side +1) or below (−1) it, from its right end on."""
+    """Room for a name along a straight line (2, 2) in pixels, above (side +1) or below (−1) it, at its right end first."""
     start, end = line if line[0, 0] < line[1, 0] else line[::-1]
     along = end - start
     length = float(np.hypot(*along))

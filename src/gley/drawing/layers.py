@@ -6,6 +6,7 @@ from collections.abc import Iterable, Sequence
 import numpy as np
 import shapely
 from matplotlib.axes import Axes
+from matplotlib.colors import to_rgba
 from matplotlib.lines import Line2D
 from matplotlib.patches import PathPatch
 from matplotlib.path import Path
@@ -148,10 +149,6 @@ def draw_fan(ax: Axes, low: Chart, high: Chart, window: shapely.Polygon, ids: Id
     parts = [part for part in polygons_of(shapely.union_all(moved)) if part.area > least]
     if not parts:
         return False
-    style = {"zorder": Z_FAN, "gid": ids.new("fan")}
-    ax.add_patch(PathPatch(path_of(parts), fc=(*_rgb(INK), 0.10), ec=(*_rgb(INK), 0.45), lw=0.4, **style))
+    fill, edge = to_rgba(INK, 0.10), to_rgba(INK, 0.45)
+    ax.add_patch(PathPatch(path_of(parts), fc=fill, ec=edge, lw=0.4, zorder=Z_FAN, gid=ids.new("fan")))
     return True
-
-
-def _rgb(colour: str) -> tuple[float, ...]:
-    return tuple(int(colour[k : k + 2], 16) / 255 for k in (1, 3, 5))

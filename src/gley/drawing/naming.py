@@ -1,5 +1,7 @@
 """Names on a chart, placed when everything else is drawn: water's lines, fields, the second element's, the points."""
 
+from typing import Any
+
 import numpy as np
 import shapely
 from matplotlib.axes import Axes
@@ -40,7 +42,7 @@ class Names:
             room.lines.append(room.path(line))
         if points is not None:
             self._take_points(points)
-        for item in (over.boundaries if over else ()):
+        for item in over.boundaries if over else ():
             room.lines.append(room.path(mV(item.points)))
         own_lines = list(room.lines)
         for item in chart.boundaries:
@@ -82,14 +84,17 @@ class Names:
 
     def _fields(self, fields, prefer, lines, *, over: bool) -> None:
         """Names of all fields: inside where they fit, the smallest first; then those that need a leader line."""
-        parts = [(item, self._to_pixels(part), n) for item, shape in fields for n, part in enumerate(polygons_of(shape))]
+        parts = [
+            (item, self._to_pixels(part), n) for item, shape in fields for n, part in enumerate(polygons_of(shape))
+        ]
         parts.sort(key=lambda entry: (entry[1].area, entry[0].name))
         frame_area = float(np.prod(self.room.frame[2:] - self.room.frame[:2]))
         waiting = []
         for item, part, n in parts:
             if n and part.area < _SECOND_PART * frame_area:
                 continue
-            variants = name_variants(*shown_name(item.name, item.formula, item.kind), style="italic" if over else "normal")
+            name, formula = shown_name(item.name, item.formula, item.kind)
+            variants = name_variants(name, formula, style="italic" if over else "normal")
             spot = self._inside(part, variants, prefer, lines)
             if spot is not None:
                 self._write_field(spot, item.name, over=over)
@@ -157,6 +162,7 @@ class Names:
         made = self.ax.text(
             x, y, words.text, fontsize=words.size, rotation=words.angle, style=words.style, color=colour, ha="center",
             va="center", multialignment="center", zorder=Z_WORDS, gid=gid, bbox=box,
+            parse_math=words.math,
         )  # fmt: skip
         self.room.words.append(spot.shape)
         if spot.target is not None:
@@ -168,6 +174,6 @@ class Names:
         assert spot.target is not None
         ends = np.array([edge_towards(spot.centre, spot.shape, spot.target), spot.target])
         data = self.room.data(ends)
-        look = {"marker": "o", "markevery": [1], "ms": 2.2} if dot else {}
+        look: dict[str, Any] = {"marker": "o", "markevery": [1], "ms": 2.2} if dot else {}
         self.ax.add_line(Line2D(*data.T, color=colour, lw=0.5, zorder=Z_LEADER, gid=gid, **look))
         self.room.words.append(shapely.LineString(ends))

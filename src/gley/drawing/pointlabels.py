@@ -56,7 +56,7 @@ def label_points(room: Room, points: np.ndarray, names: list[str], radius: float
     """
     if not len(points):
         return []
-    words = [Words(name, size) for name in names]
+    words = [Words(name, size, math=False) for name in names]
     tables = [
         _Candidates(room, word, point, radius, away)
         for word, point, away in zip(words, points, _away(points), strict=True)

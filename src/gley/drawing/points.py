@@ -1,6 +1,7 @@
 """Samples on a chart: markers filled by their own field, bars for both coordinates, and who stays outside."""
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -17,12 +18,16 @@ MARKERS = {"dissolved": ("o", 5.4), "solid": ("s", 5.0), "": ("D", 4.4)}
 
 _EDGE_PT = 0.9
 _SINGLE = 300
-_KEYS = {"dissolved": "sample: dissolved form", "solid": "sample: oversaturated with a solid", "": "sample: not assigned"}
+_KEYS = {
+    "dissolved": "sample: dissolved form",
+    "solid": "sample: oversaturated with a solid",
+    "": "sample: not assigned",
+}
 
 
 @dataclass(frozen=True)
 class Points:
-    """The samples of a chart: `shown` are those on the axes, with `label`; `outside` and `incomplete` are sample names."""
+    """The samples of a chart: `shown` on the axes, with `label`; `outside` and `incomplete` are names of samples."""
 
     shown: pd.DataFrame
     outside: tuple[str, ...]
@@ -92,9 +97,8 @@ def _markers(ax: Axes, group: pd.DataFrame, ids: Ids, *, single: bool) -> None:
     shape, size = MARKERS[first["kind"]]
     fill = field_colour(first["field"]) or "white"
     gid = ids.new("point", str(first["sample"])) if single else ids.new("points", first["field"] or "not assigned")
-    line = Line2D(
-        group["pH"], group["Eh_mV"], ls="", marker=shape, ms=size, mfc=fill, mec=INK, mew=_EDGE_PT, zorder=Z_POINT, gid=gid
-    )
+    look: dict[str, Any] = {"ms": size, "mfc": fill, "mec": INK, "mew": _EDGE_PT, "zorder": Z_POINT}
+    line = Line2D(group["pH"], group["Eh_mV"], ls="", marker=shape, gid=gid, **look)
     line.set_clip_on(False)
     ax.add_artist(line)
     line.set_clip_path(None)

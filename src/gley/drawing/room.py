@@ -14,13 +14,13 @@ GAP_PT = 1.5
 
 @dataclass(frozen=True)
 class Words:
-    """A text as it may be set: string, size in pt, angle in degrees, and font style and weight."""
+    """A text as it may be set: string, size in pt, angle in degrees, font style; `math` = `$…$` is a formula."""
 
     text: str
     size: float
     angle: float = 0.0
     style: str = "normal"
-    weight: str = "normal"
+    math: bool = True
 
 
 @dataclass(frozen=True)
@@ -60,7 +60,7 @@ class Room:
     def size(self, words: Words) -> tuple[float, float]:
         """Width and height of upright words with the air around them."""
         if words not in self._sizes:
-            made = Text(0, 0, words.text, fontsize=words.size, style=words.style, weight=words.weight)
+            made = Text(0, 0, words.text, fontsize=words.size, style=words.style, parse_math=words.math)
             made.set_figure(self.figure)
             extent = made.get_window_extent()
             air = 2 * GAP_PT * self.pt
@@ -83,6 +83,10 @@ class Room:
     def blocked(self, shapes: np.ndarray) -> np.ndarray:
         """Which shapes (n,) meet something taken."""
         return _meets(shapes, self.taken)
+
+    def block(self, x0: float, y0: float, x1: float, y1: float) -> None:
+        """Mark a rectangle in pixels as taken."""
+        self.words.append(shapely.box(x0, y0, x1, y1))
 
     def over_words(self, shapes: np.ndarray) -> np.ndarray:
         """Which shapes (n,) meet words or their leader lines."""

@@ -1,7 +1,7 @@
 """The look of all drawings: colours taken from soil (rust and ochre oxidised, gley blue-grey reduced), type, numbers.
 
-A colour follows from an oxidation state within its element and from dissolved or solid alone, so it is the same in every
-drawing. It never stands alone: fields are named, markers differ in shape too.
+A colour follows from an oxidation state within its element and from dissolved or solid alone, so it is the same in
+every drawing. It never stands alone: fields are named, markers differ in shape too.
 """
 
 import csv
@@ -120,7 +120,7 @@ def field_colour(name: str) -> str | None:
 
 
 def key_of_tints(states: set[tuple[str, str, str]]) -> list[tuple[str, str]]:
-    """Colour and label of each tint among (element, state, kind), reduced first; states that share one share the label."""
+    """Colour and label of each tint among (element, state, kind), reduced first; states of one tint share the label."""
     ordered = sorted(states, key=lambda key: (oxidation_number(bare_state(key[1])), key[2], key[0]))
     labels: dict[tuple[str, str], list[str]] = {}
     for element, state, kind in ordered:

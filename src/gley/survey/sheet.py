@@ -36,9 +36,9 @@ LABORATORY = (
 )  # fmt: skip
 UNITS = {
     "alkalinity": "mg/L as CaCO3", "NO3": "mg/L as N", "NO2": "mg/L as N", "NH4": "mg/L as N", "PO4": "mg/L as P",
-    "sulfide": "mg/L as S",
-} | dict.fromkeys(("As", "As_III", "U", "Cr", "Cr_VI", "Se", "Cu"), "µg/L")  # fmt: skip
-"""Unit of each constituent as laboratories usually give it; mg/L where none is named here."""
+    "sulfide": "mg/L as S", "As_III": "µg/L as As", "Cr_VI": "µg/L as Cr",
+} | dict.fromkeys(("As", "U", "Cr", "Se", "Cu"), "µg/L")  # fmt: skip
+"""Unit of each constituent as laboratories usually give it, with what is weighed; mg/L where none is named here."""
 STATIONS = (
     "station", "latitude_deg", "longitude_deg", "x_m", "y_m", "crs", "ground_elevation_m", "screen_top_m",
     "screen_bottom_m", "aquifer", "electrode", "remarks",
@@ -236,10 +236,12 @@ def _check(sheet: Worksheet, c: int, head: _Head, ranges: dict[str, str]) -> Non
     """The check on what is typed into a column, and how it is shown."""
     letter = get_column_letter(c)
     shown = {"date": "yyyy-mm-dd", "time": "hh:mm", "text": "@"}.get(head.dtype, "General")
+    side = {"text": "left", "date": "center", "time": "center"}.get(head.dtype, "right")
     sheet.column_dimensions[letter].number_format = shown
     for row in range(3, RULED[sheet.title] + 3):
         cell = sheet.cell(row, c)
-        cell.border, cell.number_format, cell.font, cell.alignment = _BOX, shown, _font(), Alignment(vertical="center")
+        cell.border, cell.number_format, cell.font = _BOX, shown, _font()
+        cell.alignment = Alignment(vertical="center", horizontal=side, indent=int(side == "left"))
     rule = _rule(head, f"{letter}3", ranges)
     if rule is not None:
         rule.errorTitle, rule.allow_blank = head.name, True
