@@ -28,10 +28,13 @@ class Column:
 
 @dataclass(frozen=True)
 class Constituent:
-    """Something a laboratory reports: its formula is what one mole means, `element` what other bases are counted by."""
+    """Something a laboratory reports: one mole is one of its formula; mass per litre weighs `weighed` (formula if
+    empty) unless the header or unit says otherwise; `element` is what bases are counted by.
+    """
 
     key: str
     formula: str
+    weighed: str
     element: str
     oxidation_state: int | None
     meaning: str
@@ -74,7 +77,7 @@ def constituents() -> MappingProxyType:
     for row in _rows("constituents.csv"):
         state = int(row["oxidation_state"]) if row["oxidation_state"] else None
         found[row["key"]] = Constituent(
-            row["key"], row["formula"], row["element"], state, row["meaning"], float(row["max_mol_L"])
+            row["key"], row["formula"], row["weighed"], row["element"], state, row["meaning"], float(row["max_mol_L"])
         )
     return MappingProxyType(found)
 

@@ -231,3 +231,32 @@ def test_depth_in_metres_is_a_well_s_not_an_electrode_s(tmp_path):
     survey = read(tmp_path, "Well;Depth (m);ORP (mV);pH", "W1;61;1;7")
     assert survey.samples.loc[0, "depth_bottom_m"] == 61
     assert math.isnan(survey.samples.loc[0, "depth_cm"])
+
+
+@pytest.mark.parametrize(
+    ("header", "key", "g_mol"),
+    [
+        # laboratories report species of arsenic and chromium as the element (common practice)
+        ("As(III) (µg/L)", "As_III", 74.922),
+        ("As III (µg/L)", "As_III", 74.922),
+        ("As(V) (µg/L)", "As_V", 74.922),
+        ("Fe(II) (µg/L)", "Fe_II", 55.845),
+        ("Cr(VI) (µg/L)", "Cr_VI", 51.996),
+        ("boron (µg/L)", "B", 10.81),
+        ("DIC (µg/L)", "DIC", 12.011),
+        ("NH3 (µg/L)", "NH4", 17.031),
+    ],
+)
+def test_species_and_elements_weigh_what_laboratories_report(tmp_path, header, key, g_mol):
+    survey = read(tmp_path, f"Sample;pH;ORP (mV);{header}", "W1;7;1;50")
+    assert survey.amounts.loc[0, f"{key}_mol_L"] == pytest.approx(50e-6 / g_mol, rel=2e-4)
+
+
+def test_what_is_weighed_is_said_where_the_header_leaves_it_open(tmp_path):
+    survey = read(tmp_path, "Sample;pH;ORP (mV);Nitrate (mg/L);NO3-N (mg/L)", "W1;7;1;50;2", "W2;7;1;40;2")
+    assert said(survey, "survey.weighed_as") == [("D1", "Nitrate (mg/L)")]
+
+
+def test_pH_can_be_said_to_be_the_laboratory_s(tmp_path):
+    survey = read(tmp_path, "Sample;pH;pH where;ORP (mV)", "W1;7;Lab;1", "W2;7;;1")
+    assert list(survey.samples["pH_where"]) == ["laboratory", "field"]

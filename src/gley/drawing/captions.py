@@ -8,6 +8,7 @@ from matplotlib.text import Text
 from matplotlib.transforms import ScaledTranslation
 
 from gley import __version__
+from gley.drawing.room import figure_of
 from gley.drawing.style import INK, SMALL_PT, amount_text, state_text
 from gley.stability import Chart
 
@@ -64,7 +65,7 @@ class Under:
 
     def __init__(self, ax: Axes, start_pt: float, left_pt: float = 0.0, width_pt: float | None = None) -> None:
         self.ax, self.depth, self.left = ax, start_pt, left_pt
-        self.figure = ax.get_figure(root=True)
+        self.figure = figure_of(ax)
         self.px = self.figure.dpi / 72.0
         self.width = width_pt if width_pt is not None else ax.get_window_extent().width / self.px - left_pt
 

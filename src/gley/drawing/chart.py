@@ -18,6 +18,7 @@ from gley.drawing import layers, style
 from gley.drawing.captions import Under, conditions_line, fan_line, made_by
 from gley.drawing.naming import Names
 from gley.drawing.points import Points, draw_points
+from gley.drawing.room import figure_of
 from gley.drawing.save import save_figure
 from gley.stability import Chart
 
@@ -67,7 +68,7 @@ class EphChart:
     @property
     def figure(self) -> Figure:
         """The figure the chart is on."""
-        return self.ax.get_figure(root=True)  # type: ignore[return-value]
+        return figure_of(self.ax)
 
     def draw(self, chart: Chart, title: str = "") -> "EphChart":
         """Fields, boundaries, water's limits and axes; the title is the element's name unless one is given."""

@@ -85,7 +85,7 @@ class Ground:
 
     def ticks(self, axis: int, low: float, high: float) -> tuple[np.ndarray, list[str]]:
         """Places and texts of an axis' ticks: full coordinates, as many decimals as the step needs."""
-        values = MaxNLocator(6 if axis == 0 else 5, steps=[1, 2, 5, 10]).tick_values(low, high)
+        values = np.asarray(MaxNLocator(6 if axis == 0 else 5, steps=[1, 2, 5, 10]).tick_values(low, high), float)
         values = values[(values >= low) & (values <= high)]
         step = float(np.diff(values).min()) if len(values) > 1 else 1.0
         decimals = max(0, int(-np.floor(np.log10(step) + 1e-9)))

@@ -141,7 +141,7 @@ def beside_spot(room: Room, target: tuple[float, float], variants: list[Words]) 
 
 
 def line_spot(room: Room, line: np.ndarray, text: str, side: int) -> Spot | None:
-    """Room for a name along a straight line (2, 2) in pixels, above (side +1) or below (−1) it, at its right end first."""
+    """Room for a name along a straight line (2, 2) in pixels, above (side +1) or below (−1) it, from the right."""
     start, end = line if line[0, 0] < line[1, 0] else line[::-1]
     along = end - start
     length = float(np.hypot(*along))

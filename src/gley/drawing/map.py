@@ -18,7 +18,7 @@ from gley.drawing.captions import Under, names_text, plural
 from gley.drawing.ground import Ground, draw_north, draw_scale_bar, draw_true_places
 from gley.drawing.layers import Z_LEADER, Z_POINT, Z_WORDS, Ids
 from gley.drawing.pointlabels import label_points
-from gley.drawing.room import Room, edge_towards
+from gley.drawing.room import Room, edge_towards, figure_of
 from gley.drawing.save import save_figure
 from gley.drawing.spread import side_by_side
 from gley.drawing.symbols import Symbol, symbols
@@ -62,7 +62,7 @@ class SiteMap:
     @property
     def figure(self) -> Figure:
         """The figure the map is on."""
-        return self.ax.get_figure(root=True)  # type: ignore[return-value]
+        return figure_of(self.ax)
 
     def draw(
         self, places: geopandas.GeoDataFrame, category: str, title: str = "", labels: str | None = "station",

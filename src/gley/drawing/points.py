@@ -120,9 +120,8 @@ def _bars(ax: Axes, shown: pd.DataFrame, ids: Ids) -> None:
 def bar_ends(shown: pd.DataFrame) -> list[np.ndarray]:
     """The bars of all samples as lines (2, 2) in pH and mV."""
     found = []
-    for row in shown.itertuples():
-        if np.isfinite(row.pH_sd):
-            found.append(np.array([[row.pH - row.pH_sd, row.Eh_mV], [row.pH + row.pH_sd, row.Eh_mV]]))
-        if np.isfinite(row.Eh_sd_mV):
-            found.append(np.array([[row.pH, row.Eh_mV - row.Eh_sd_mV], [row.pH, row.Eh_mV + row.Eh_sd_mV]]))
+    for pH, Eh, pH_sd, Eh_sd in shown[["pH", "Eh_mV", "pH_sd", "Eh_sd_mV"]].to_numpy(float):
+        for wide, high in ((pH_sd, 0.0), (0.0, Eh_sd)):
+            if np.isfinite(wide + high):
+                found.append(np.array([[pH - wide, Eh - high], [pH + wide, Eh + high]]))
     return found

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 from matplotlib.axes import Axes
+from matplotlib.figure import Figure
 from matplotlib.text import Text
 from shapely import STRtree
 
@@ -33,12 +34,19 @@ class Spot:
     target: tuple[float, float] | None = None
 
 
+def figure_of(ax: Axes) -> Figure:
+    """The whole figure an axes is on."""
+    figure = ax.get_figure(root=True)
+    assert figure is not None, "axes without a figure"
+    return figure
+
+
 class Room:
     """Keeps the shapes on one axes and measures words there. All lengths are pixels of the figure's own dpi."""
 
     def __init__(self, ax: Axes) -> None:
         self.ax = ax
-        self.figure = ax.get_figure(root=True)
+        self.figure = figure_of(ax)
         self.pt = self.figure.dpi / 72.0
         x0, y0, x1, y1 = ax.get_window_extent().extents
         inset = GAP_PT * self.pt
@@ -49,7 +57,7 @@ class Room:
         self.bars: list[shapely.Geometry] = []
         self._sizes: dict[Words, tuple[float, float]] = {}
 
-    def pixels(self, points: np.ndarray) -> np.ndarray:
+    def pixels(self, points) -> np.ndarray:
         """Data coordinates (n, 2) to pixels."""
         return self.ax.transData.transform(np.asarray(points, float))
 
@@ -137,12 +145,13 @@ def segments_meet_boxes(start: np.ndarray, end: np.ndarray, boxes: np.ndarray) -
     high = (boxes[None, :, 2:] - start[:, None, :]) / direction
     enter = np.minimum(low, high).max(2)
     leave = np.maximum(low, high).min(2)
-    return (np.maximum(enter, 0.0) <= np.minimum(leave, 1.0)) & (leave >= 0)
+    return np.asarray((np.maximum(enter, 0.0) <= np.minimum(leave, 1.0)) & (leave >= 0))
 
 
 def boxes_meet(a: np.ndarray, b: np.ndarray) -> np.ndarray:
     """Which of n boxes overlap which of m boxes (x0, y0, x1, y1): bool (n, m)."""
-    return ((a[:, None, :2] < b[None, :, 2:]) & (a[:, None, 2:] > b[None, :, :2])).all(2)
+    apart = (a[:, None, :2] >= b[None, :, 2:]) | (a[:, None, 2:] <= b[None, :, :2])
+    return ~np.any(np.asarray(apart), axis=2)
 
 
 def segments_cross(a: np.ndarray, b: np.ndarray, c: np.ndarray, d: np.ndarray) -> np.ndarray:
@@ -152,4 +161,4 @@ def segments_cross(a: np.ndarray, b: np.ndarray, c: np.ndarray, d: np.ndarray) -
         return (q[..., 0] - p[..., 0]) * (r[..., 1] - p[..., 1]) - (q[..., 1] - p[..., 1]) * (r[..., 0] - p[..., 0])
 
     a, b, c, d = a[:, None], b[:, None], c[None], d[None]
-    return (side(a, b, c) * side(a, b, d) < 0) & (side(c, d, a) * side(c, d, b) < 0)
+    return np.asarray((side(a, b, c) * side(a, b, d) < 0) & (side(c, d, a) * side(c, d, b) < 0))

@@ -2,6 +2,8 @@
 
 import numpy as np
 
+from gley.drawing.room import boxes_meet
+
 MOST_MOVED = 200
 """Points above which all stay where they are: a crowd is read as a crowd."""
 
@@ -30,8 +32,8 @@ def side_by_side(points: np.ndarray, size: float) -> tuple[np.ndarray, np.ndarra
     groups = [[k] for k in range(len(points))]
     while True:
         boxes = np.array([_box(points, group, size) for group in groups])
-        apart = (boxes[:, None, :2] >= boxes[None, :, 2:] - 1e-6) | (boxes[:, None, 2:] <= boxes[None, :, :2] + 1e-6)
-        meets = ~apart.any(2)
+        boxes += [1e-6, 1e-6, -1e-6, -1e-6]
+        meets = boxes_meet(boxes, boxes)
         np.fill_diagonal(meets, False)
         if not meets.any():
             break

@@ -91,7 +91,8 @@ def tint(element: str, state: str, kind: str) -> str:
     low, high = _ends(element)
     place = np.clip((number - low) / (high - low) if high > low else 0.5, _STOPS[0], _STOPS[-1])
     stops = np.array([to_rgb(colour) for colour in (_SOLID if kind == "solid" else _DISSOLVED)])
-    return to_hex([np.interp(place, _STOPS, stops[:, channel]) for channel in range(3)])
+    red, green, blue = (float(np.interp(place, _STOPS, stops[:, channel])) for channel in range(3))
+    return to_hex((red, green, blue))
 
 
 @cache

@@ -4,7 +4,6 @@ import re
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-import numpy as np
 from matplotlib.colors import to_hex, to_rgb
 
 from gley.drawing.style import bare_state, field_colour, field_state, oxidation_number, species_text
@@ -81,7 +80,8 @@ def _wish(name: str) -> tuple[str, tuple[str, ...]]:
 
 def deeper(colour: str) -> str:
     """A field's tint made strong enough for a small marker on white."""
-    return to_hex(np.array(to_rgb(colour)) ** _DEEPER)
+    red, green, blue = (part**_DEEPER for part in to_rgb(colour))
+    return to_hex((red, green, blue))
 
 
 def _text(name: str) -> str:

@@ -28,7 +28,8 @@ def to_mol_L(value: float, unit: Unit, constituent: Constituent, basis: str) -> 
     """
     if constituent.key == "alkalinity":
         return _equivalents(value, unit, basis)
-    stated = unit if unit.basis or not basis else Unit(unit.kind, unit.factor, basis, unit.text)
+    basis = unit.basis or basis or constituent.weighed
+    stated = Unit(unit.kind, unit.factor, basis if unit.kind in ("mass", "amount") else "", unit.text)
     return mol_per_L(value, stated, constituent.formula, constituent.element, constituent.charge)
 
 

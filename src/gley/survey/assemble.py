@@ -26,6 +26,7 @@ _KINDS = {
     "%": "percent",
 }
 _ALSO = {"temperature": ("fahrenheit",)}
+_WEIGHED_OTHERWISE = ("NO3", "NO2", "NH4", "PO4", "Si", "DIC", "sulfide", "alkalinity")
 _MUST_NAME = ("µS/cm",)
 _VOLTS_BELOW = 2.0
 
@@ -55,6 +56,7 @@ class _RowReader:
         self.vocabulary = columns(table.kind)
         self.units: dict[int, Unit | None] = {}
         self.unusable: set[int] = set()
+        self.said: set[tuple] = set()
         for c, header, unit in table.columns:
             stated = settings.units.get(header.target) or settings.units.get(header.text)
             self.units[c] = unit or recognise(stated)
@@ -133,7 +135,8 @@ class _RowReader:
             if not record.cells["time"]:
                 self.findings.add("survey.not_a_time", where, values.words(cell))
         elif column.dtype == "text":
-            record.cells[target], record.places[target] = values.words(cell), where
+            text = values.words(cell)
+            record.cells[target], record.places[target] = _where_read(text) if target == "pH_where" else text, where
         else:
             value = self._number(c, target, cell, where)
             if value is not None:
@@ -142,7 +145,8 @@ class _RowReader:
     def _conductivity(self, c: int) -> str:
         """`EC` and `conductivity` are taken at 25 °C unless the header says otherwise, as meters show it."""
         where = self.table.place(self.table.header_row, c)
-        if not any(item.rule == "survey.conductivity_at_25" and item.place == where for item in self.findings):
+        if (where, "conductivity") not in self.said:
+            self.said.add((where, "conductivity"))
             self.findings.add("survey.conductivity_at_25", where, str(self.table.grid.cell(self.table.header_row, c)))
         return "SC_uS_cm"
 
@@ -180,6 +184,13 @@ class _RowReader:
     def _amount(self, record: Record, c: int, header: Header, cell: Any, where: Place) -> None:
         item = constituents()[header.target]
         basis = counts_as(header.text, item.element)
+        unit = self.units[c]
+        if item.key in _WEIGHED_OTHERWISE and unit and unit.kind == "mass" and not unit.basis and not basis:
+            head = self.table.place(self.table.header_row, c)
+            if (head, item.key) not in self.said:
+                weighed = "CaCO3" if item.key == "alkalinity" else item.weighed or item.formula.split("^")[0]
+                self.findings.add("survey.weighed_as", head, header.text, weighed=weighed)
+                self.said.add((head, item.key))
         add_amount(record, item.key, cell, self.units[c], basis, where, self.table.grid.decimal_comma, self.findings)
 
 
@@ -216,6 +227,11 @@ def add_amount(
             findings.add("survey.flagged", where, shown, column=key, flag=reading.flag)
     record.reported[key] = (f"{key}_{slug(unit, basis, item)}", shown, flag)
     record.places[key] = record.places[amount_column(key)] = where
+
+
+def _where_read(text: str) -> str:
+    """`lab`, `Labor`, `laboratory` as laboratory, all else as field."""
+    return "laboratory" if text.lower().startswith("lab") else "field"
 
 
 def _house(value: float, unit: Unit | None, column: Column) -> float:

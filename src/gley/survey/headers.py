@@ -19,6 +19,7 @@ _BRACKET = re.compile(r"^(.*?)\s*[\(\[]\s*([^()\[\]]*(?:\([^()]*\))?[^()\[\]]*)\
 _BESIDE_THE_POINT = re.compile(
     r"(?i)(?<![A-Za-z])(field|dissolved|diss|filtered|filt|conc|value|measured|in situ)(?![A-Za-z])"
 )
+_STATE = re.compile(r"\(\s*(?:III|II|IV|VII|VI|V|I)\s*\)")
 _AS = re.compile(r"[\s_-]as[\s_-]+\(?[A-Z][A-Za-z0-9]*\)?\s*$")
 _REPLICATE = re.compile(r"^(?:pt|orp|redox|eh|electrode|platinum)\s*(\d{1,2})$")
 
@@ -117,7 +118,7 @@ def _split(shown: str) -> tuple[str, Unit | None]:
 
 def counts_as(shown: str, element: str) -> str:
     """Formula that a header says is weighed: `NO3-N` N, `alkalinity as CaCO3` CaCO3, `SiO2` SiO2; '' when none."""
-    name = _split(shown)[0].strip()
+    name = _STATE.sub("", _split(shown)[0]).strip()
     found = re.search(r"[-\s_]as[-\s_]+\(?([A-Z][A-Za-z0-9]*)\)?\s*$", name) or re.search(r"[-\s_](N|P|S|C)\s*$", name)
     text = found.group(1) if found else re.sub(r"\^?\d*[-+−]$", "", name)
     try:

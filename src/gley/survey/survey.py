@@ -196,6 +196,6 @@ def _say_lacking(rows: list[Record], findings: Findings) -> None:
         if "pH" in held and row.cells.get("pH") is None and row.cells.get("pH_lab") is None:
             findings.add("survey.pH_missing", row.places.get("pH", row.home), sample=row.cells["sample"])
         if row.cells.get("pH") is not None:
-            row.cells.setdefault("pH_where", "field")
+            row.cells["pH_where"] = row.cells.get("pH_where") or "field"
         elif row.cells.get("pH_lab") is not None:
             row.cells["pH"], row.cells["pH_where"] = row.cells["pH_lab"], "laboratory"
