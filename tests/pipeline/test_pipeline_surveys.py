@@ -142,3 +142,18 @@ def test_check_finds_the_same_as_the_run(alluvial):
 def test_crs_none_gives_no_places():
     result = pipeline.run(TOP / "sample_surveys/nebelbruch.csv", Settings().replace(survey={"crs": "none"}))
     assert result.places is None
+
+
+def test_non_detect_never_proves_a_solid(alluvial):
+    fields = alluvial.fields.set_index(["sample", "element"])
+    limited = alluvial.survey.amounts["Fe_limit"] == "<"
+    for name in alluvial.survey.samples.loc[limited, "sample"]:
+        row = fields.loc[(name, "Fe")]
+        assert not row["outcome"].startswith("at equilibrium")
+        assert row["kind"] != "solid" or row["outcome"] == "open: rests on a limit"
+
+
+def test_every_outcome_is_one_of_the_stated_words(alluvial):
+    starts = ("clear", "likely", "between ", "at equilibrium with ", "open: rests on a limit")
+    assigned = alluvial.fields[alluvial.fields["field"] != ""]
+    assert all(text.startswith(starts) for text in assigned["outcome"])

@@ -19,6 +19,10 @@ _MEASURED = (
     "depth_top_m",
     "depth_bottom_m",
 )
+# left out where no sample has one
+_WHERE_MEASURED = (
+    "EC_uS_cm", "O2_percent", "depth_cm", "depth_top_m", "depth_bottom_m", "ORP_replicates", "ORP_spread_mV",
+)  # fmt: skip
 _POTENTIAL = (
     "ORP_mV", "ORP_replicates", "ORP_spread_mV", "electrode_used", "reference_mV", "check_offset_mV",
     "Eh_mV", "Eh_sd_mV", "Eh_sd_own_mV", "Eh_sd_common_mV", "pe", "temperature_used_C", "temperature_basis",
@@ -35,6 +39,7 @@ def sample_table(result: Result) -> pd.DataFrame:
     samples, eh = result.survey.samples, result.eh
     beside = samples.drop(columns=[name for name in samples if name in eh.columns])
     whole = pd.concat([beside, eh], axis=1)
+    whole = whole.drop(columns=[name for name in _WHERE_MEASURED if name in whole and whole[name].isna().all()])
     table = whole[[name for name in (*_FIRST, *_MEASURED, *_POTENTIAL) if name in whole]].copy()
     table["date"] = _dates(table["date"])
     parts = [

@@ -126,7 +126,7 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
         say(ready.assumed[channel], f"ligand assumed: {channel}")
         if channel == "S(-II)":
             continue
-        unknown = np.isnan(ready.ligands[channel])
+        unknown = np.isnan(ready.ligands[channel]) & ~np.isnan(ready.pH)
         acid = ready.too_acid & unknown if channel == "C(IV)" else np.zeros(len(unknown), bool)
         say(acid, f"inorganic carbon unknown below pH {DIC_MIN_PH:g}")
         say(unknown & ~acid, f"ligand not measured: {LIGAND_INPUTS[channel]}")
@@ -174,7 +174,7 @@ def _fill(table, status, rows, element, target, ready, spread, tied, choice, set
         "probability": odds.of(solved.field), "second_field": named(odds.second(solved.field)),
         "next_probability": odds.of(odds.second(solved.field)),
     })  # fmt: skip
-    table.loc[rows, "outcome"] = _outcomes(table.loc[rows], stated)
+    table.loc[rows, "outcome"] = _outcomes(table.loc[rows], _bounded(target, element, ready, rows), stated)
     _limits(table, status, rows, element, target, ready, tied, choice, solved)
 
 
@@ -192,12 +192,27 @@ def _saturation(target: System, solved: Solved, stated) -> np.ndarray:
     return np.where(np.isnan(solved.SI), "", words).astype(object)
 
 
-def _outcomes(part: pd.DataFrame, stated) -> list[str]:
-    """The outcome in words: a sample that sits on a solid's line is buffered there; that is evidence, not doubt."""
+def _bounded(target: System, element: str, ready: Waters, rows: np.ndarray) -> dict[str, np.ndarray]:
+    """By solid: for which samples its saturation rests on a value that is only an upper bound."""
+    found = {}
+    for item in target.members:
+        if not item.dissolved:
+            names = [element, *(channel for channel in item.others if channel in ready.limited)]
+            found[item.name] = np.any([ready.limited[name][rows] for name in names], axis=0)
+    return found
+
+
+def _outcomes(part: pd.DataFrame, bounded: dict[str, np.ndarray], stated) -> list[str]:
+    """The outcome in words: a sample that sits on a solid's line is buffered there; that is evidence, not doubt.
+
+    A limit proves no solid: where a solid's field rests on one, the outcome stays open.
+    """
     words = []
-    for row in part.to_dict("records"):
+    for i, row in enumerate(part.to_dict("records")):
         on_line = row["saturation"] == "near" and row["solid"] in (row["field"], row["next_field"])
-        if on_line:
+        if row["kind"] == "solid" and bounded[row["field"]][i]:
+            words.append("open: rests on a limit")
+        elif on_line and not bounded[row["solid"]][i]:
             words.append(f"at equilibrium with {row['solid']}")
         elif row["probability"] >= stated.clear:
             words.append("clear")
