@@ -14,7 +14,7 @@ from gley.drawing.room import Room, Words
 from gley.drawing.style import INK, SMALL_PT
 
 _PAD, _PAD_BELOW = 0.09, 0.17
-_LEAST_M = 100.0
+_LEAST_M, _LEAST_SHARE = 40.0, 0.3
 _UNITS = {"metre": "m", "degree": "°", "foot": "ft", "US survey foot": "US ft", "kilometre": "km"}
 
 
@@ -70,13 +70,17 @@ class Ground:
 
     def shape(self) -> float:
         """Height of the places by their width on the ground, between 0.55 and 0.95."""
-        size = np.maximum((self.high - self.low) * self.metres, _LEAST_M) * [1 + 2 * _PAD, 1 + _PAD + _PAD_BELOW]
-        return float(np.clip(size[1] / size[0], 0.55, 0.95))
+        width, height = self._size()
+        return float(np.clip(height / width, 0.55, 0.95))
+
+    def _size(self) -> np.ndarray:
+        """Width and height to show, m: the places with air; a line of places or a single one gets some breadth too."""
+        size = (self.high - self.low) * self.metres
+        return np.maximum(size, max(_LEAST_SHARE * size.max(), _LEAST_M)) * [1 + 2 * _PAD, 1 + _PAD + _PAD_BELOW]
 
     def window(self, shape: float) -> tuple[float, float, float, float]:
         """(x0, y0, x1, y1) round the places, with air, in a plot of that height by width; more below, for the scale."""
-        size = np.maximum((self.high - self.low) * self.metres, _LEAST_M)
-        width, height = size * [1 + 2 * _PAD, 1 + _PAD + _PAD_BELOW]
+        width, height = self._size()
         width, height = max(width, height / shape), max(height, width * shape)
         half = np.array([width, height]) / 2 / self.metres
         shift = np.array([0.0, height * (_PAD_BELOW - _PAD) / 2]) / self.metres
@@ -86,7 +90,9 @@ class Ground:
     def ticks(self, axis: int, low: float, high: float) -> tuple[np.ndarray, list[str]]:
         """Places and texts of an axis' ticks: full coordinates, as many decimals as the step needs."""
         values = np.asarray(MaxNLocator(6 if axis == 0 else 5, steps=[1, 2, 5, 10]).tick_values(low, high), float)
-        values = values[(values >= low) & (values <= high)]
+        # none near the corners, where the two axes' texts would meet
+        air = (high - low) * (0.01 if axis == 0 else 0.05)
+        values = values[(values >= low + air) & (values <= high - air)]
         step = float(np.diff(values).min()) if len(values) > 1 else 1.0
         decimals = max(0, int(-np.floor(np.log10(step) + 1e-9)))
         return values, [f"{value:.{decimals}f}".replace("-", "−") for value in values]

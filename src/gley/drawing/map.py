@@ -29,6 +29,7 @@ _CAPTION_PT = 72.0 * (style.WIDTH_MM / 25.4 - _LEFT - _RIGHT)
 _LAYOUT_DPI = 144
 _MOST_LABELS = 60
 _MARKER_PT, _EDGE_PT = 5.6, 0.8
+_LEADER_FROM_PT = 4.0
 _SIZES = {
     "^": 1.1, "v": 1.1, "<": 1.1, ">": 1.1, "p": 1.12, "h": 1.1, "8": 1.05, "s": 0.92, "D": 0.82, "*": 1.45, "P": 1.12,
     "X": 1.12,
@@ -75,7 +76,7 @@ class SiteMap:
         places : GeoDataFrame
             One row per sample: `sample`, point geometry (None where unknown), and the columns named below.
         category : str
-            Column that colour and shape follow: fields or redox processes; empty ones are drawn hollow.
+            Column that colour and shape follow: fields or redox processes; empty ones are drawn white.
         title : str
             Heading.
         labels : str or None
@@ -179,7 +180,7 @@ class SiteMap:
             return
         anchors = np.array([centres[rows].mean(0) for _, rows in wanted]).reshape(-1, 2)
         spots = label_points(room, anchors, [name for name, _ in wanted], _MARKER_PT / 2 * room.pt, style.SMALL_PT)
-        for spot, (name, _) in zip(spots, wanted, strict=True):
+        for spot, (name, rows) in zip(spots, wanted, strict=True):
             if spot is None:
                 self.left_out += 1
                 continue
@@ -187,7 +188,9 @@ class SiteMap:
             gid = self.ids.new("name", name)
             look: dict[str, Any] = {"fontsize": style.SMALL_PT, "ha": "center", "va": "center", "parse_math": False}
             self.ax.text(x, y, name, zorder=Z_WORDS, gid=gid, **look)
-            if spot.target is not None:
+            # a row of markers is wide: near its end no line is needed
+            off = min(shapely.distance(spot.shape, room.markers[k]) for k in rows)
+            if spot.target is not None and off > _LEADER_FROM_PT * room.pt:
                 ends = room.data([edge_towards(spot.centre, spot.shape, spot.target), spot.target])
                 leader = self.ids.new("leader", gid)
                 self.ax.add_line(Line2D(*ends.T, color=style.INK, lw=0.5, zorder=Z_LEADER, gid=leader))
@@ -207,7 +210,7 @@ def _near(centres: np.ndarray, rows: list[int], reach: float) -> list[list[int]]
 
 def _marker(spot: np.ndarray, mark: Symbol, gid: str | None) -> Line2D:
     size = _MARKER_PT * _SIZES.get(mark.marker, 1.0)
-    look: dict[str, Any] = {"ms": size, "mfc": mark.fill or "none", "mec": style.INK, "mew": _EDGE_PT}
+    look: dict[str, Any] = {"ms": size, "mfc": mark.fill or "white", "mec": style.INK, "mew": _EDGE_PT}
     return Line2D([spot[0]], [spot[1]], ls="", marker=mark.marker, zorder=Z_POINT, gid=gid, **look)
 
 

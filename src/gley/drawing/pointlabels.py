@@ -11,7 +11,7 @@ MOST_LABELS = 40
 _ANGLES = np.deg2rad([0, 180, 30, 330, 150, 210, 60, 300, 120, 240, 90, 270, 15, 345, 165, 195, 45, 315, 135, 225])
 _REACH_PT = np.array([0.5, 3.0, 7.0, 12.0, 18.0, 26.0, 36.0, 48.0, 62.0, 78.0, 96.0])
 _LEADER_FROM_PT = 5.0
-_LINE, _LEADER, _ALONG, _CROSSING, _NEVER = 34.0, 6.0, 40.0, 60.0, 1e6
+_LINE, _LEADER, _ALONG, _CROSSING, _NEVER = 45.0, 6.0, 40.0, 60.0, 1e6
 
 
 class _Candidates:

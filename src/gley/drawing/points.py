@@ -14,7 +14,7 @@ from gley.drawing.layers import Z_BAR, Z_POINT, Ids
 from gley.drawing.style import INK, field_colour, field_state
 
 MARKERS = {"dissolved": ("o", 5.4), "solid": ("s", 5.0), "": ("D", 4.4)}
-"""Shape and size in pt by kind of field; a sample without a field is a hollow diamond."""
+"""Shape and size in pt by kind of field; a sample without a field is a white diamond."""
 
 _EDGE_PT = 0.9
 _SINGLE = 300

@@ -30,7 +30,7 @@ HOLLOW = {"": "o", "not assigned": "o", "undetermined": "D"}
 
 @dataclass(frozen=True)
 class Symbol:
-    """How one category is drawn; `fill` is None for a hollow marker."""
+    """How one category is drawn; `fill` is None for a white one."""
 
     fill: str | None
     marker: str
@@ -38,7 +38,7 @@ class Symbol:
 
 
 def symbols(categories: Iterable[str]) -> dict[str, Symbol]:
-    """A symbol for each category present, most oxidised first, those not assigned last and hollow; no two alike."""
+    """A symbol for each category present, most oxidised first, those not assigned last and white; no two alike."""
     present = sorted(set(categories), key=_order)
     used: set[str] = set()
     found = {}
