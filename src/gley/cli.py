@@ -83,11 +83,13 @@ def run(
     Example: gley run survey.xlsx --out assessment
     """
     from gley import pipeline, wording
-    from gley.delivery import refuse
+    from gley.delivery import refuse, restore
 
     chosen = _settings(settings, electrode, crs, elements=elements, solids=solids)
     folder = out or Path(f"{surveys[0].stem}_redox")
     _tell(f"Reading {', '.join(str(path) for path in surveys)}")
+    if restore(folder):
+        _tell(f"An earlier run was stopped while it replaced {folder}: the old result was put back.")
     refuse(folder, overwrite)
     result = pipeline.run(list(surveys), chosen, command=_command())
     _tell_findings(result.findings)

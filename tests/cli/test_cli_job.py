@@ -97,3 +97,13 @@ def test_every_command_has_help_with_an_example(capsys, name):
     code, out, _ = answer(capsys, name, "--help")
     assert code == 0
     assert f"Example: gley {name}" in out
+
+
+def test_run_stopped_while_replacing_is_mended_and_said(capsys, tmp_path):
+    (tmp_path / "a.previous").mkdir()
+    (tmp_path / "a.previous/run.json").write_text("{}")
+    code, _, err = answer(capsys, "run", SURVEY, "--out", tmp_path / "a")
+    assert code == 1
+    assert "the old result was put back" in err
+    assert (tmp_path / "a/run.json").exists()
+    assert not (tmp_path / "a.previous").exists()

@@ -29,18 +29,12 @@ CAUTIONS = (
 
 _PLAIN_FORMULA = re.compile(r"\b(?:O2|NO3|NO2|NH4|SO4|HCO3|H2S|CH4|H2O|CO2)\b")
 _SEVERITIES = {"error": "Errors", "warning": "Warnings", "note": "Notes"}
-_FIELD_COLUMNS = (
-    "sample", "field", "outcome", "probability", "dissolved_form", "share", "saturation", "solid", "SI", "next_field",
-    "margin_mV", "next_field_pH", "margin_pH", "status",
-)  # fmt: skip
 _HEADS = {
     "sample": "Sample", "station": "Station", "date": "Date", "round": "Round", "temperature_C": "T (°C)",
     "ORP_mV": "ORP (mV)", "Eh_mV": "Eh (mV)", "Eh_sd_mV": "± (mV)", "redox_category": "Redox category",
-    "redox_process": "Redox process", "field": "Field", "outcome": "Outcome", "probability": "Probability",
-    "dissolved_form": "Dissolved form", "share": "Share", "saturation": "Saturation", "solid": "Solid",
-    "next_field": "Next field (Eh)", "margin_mV": "Margin (mV)", "next_field_pH": "Next field (pH)",
-    "margin_pH": "Margin (pH)", "status": "Status",
+    "redox_process": "Redox process",
 }  # fmt: skip
+_KEPT_WHOLE = ("sample", "Sample", "station", "date")
 
 
 def page(result: Result, folder: Path) -> str:
@@ -72,28 +66,36 @@ def table(frame: pd.DataFrame) -> str:
     heads = "".join(f"<th>{escape(_HEADS.get(str(name), str(name)))}</th>" for name in frame)
     rows = []
     for record in frame.to_dict("records"):
-        cells = "".join(f"<td{_align(value)}>{_cell(value)}</td>" for value in record.values())
+        cells = "".join(f"<td{_style(str(name), value)}>{_cell(value)}</td>" for name, value in record.items())
         rows.append(f"<tr>{cells}</tr>")
     return f'<div class="wide"><table><thead><tr>{heads}</tr></thead><tbody>{"".join(rows)}</tbody></table></div>'
 
 
-def _align(value: object) -> str:
-    return ' class="n"' if isinstance(value, (int, float)) else ""
+def _style(name: str, value: object) -> str:
+    if isinstance(value, (int, float)):
+        return ' class="n"'
+    return ' class="k"' if name in _KEPT_WHOLE else ""
 
 
 def _cell(value: object) -> str:
     if isinstance(value, float):
-        return "" if value != value else f"{value:.3g}" if abs(value) < 10 else f"{value:.0f}"
-    text = str(value)
-    return chemical(text)
+        text = "" if value != value else f"{value:.3g}" if abs(value) < 10 else f"{value:.0f}"
+        return text.replace("-", "−")
+    return chemical(str(value))
 
 
 def chemical(text: str) -> str:
     """Text with the names of species set as formulas."""
-    if text in species() and species()[text].dissolved:
-        return markup(species()[text].formula)
-    words = [markup(escape(word)) if "^" in word else escape(word) for word in text.split(" ")]
+    words = [_word(word) for word in text.split(" ")]
     return _PLAIN_FORMULA.sub(lambda found: markup(found.group(0)), " ".join(words))
+
+
+def _word(word: str) -> str:
+    """A word set as a formula when it is a dissolved form's name, with what stands behind it."""
+    name = word.rstrip(",;.:")
+    if name in species() and species()[name].dissolved:
+        return markup(species()[name].formula) + escape(word[len(name) :])
+    return markup(escape(word)) if "^" in word else escape(word)
 
 
 def _section(title: str, inner: str) -> str:
@@ -142,7 +144,7 @@ def _span(result: Result) -> str:
     )
     wrong = beyond > IMPLAUSIBLE_mV
     kept = Eh[~wrong].dropna()
-    text = f"from {kept.min():.0f} to {kept.max():.0f} mV" if len(kept) else "none believable"
+    text = f"from {kept.min():.0f} to {kept.max():.0f} mV".replace("-", "−") if len(kept) else "none believable"
     return text + (f" ({int(wrong.sum())} outside water's stability left aside)" if wrong.any() else "")
 
 
@@ -166,9 +168,29 @@ def _pictures(result: Result, folder: Path, kind: str, title: str) -> str:
 
 def _element(result: Result, element: str) -> str:
     own = result.fields[result.fields["element"] == element]
-    wanted = own[[name for name in _FIELD_COLUMNS if name in own]].copy()
-    wanted["margin_mV"] = wanted["margin_mV"].round(-1)
-    return _section(f"{element}: stability fields", table(wanted))
+    rows = [_field_row(row) for row in own.to_dict("records")]
+    return _section(f"{element}: stability fields", table(pd.DataFrame(rows)))
+
+
+def _field_row(row: dict) -> dict[str, str]:
+    """One assignment in the words of the report: what it is, how sure, what lies beside it and how far the next is."""
+
+    def with_number(name: str, value: float, form: str, unit: str = "") -> str:
+        if not row[name] or value != value:
+            return ""
+        return f"{row[name]} {format(value, form).replace('-', '−')}{unit}"
+
+    return {
+        "Sample": row["sample"],
+        "Field": row["field"],
+        "Outcome": row["outcome"],
+        "Probability": "" if row["probability"] != row["probability"] else f"{row['probability']:.2f}",
+        "Most abundant form": with_number("dissolved_form", 100 * row["share"], ".0f", " %"),
+        "Solid, SI": with_number("solid", row["SI"], "+.1f"),
+        "Next field along Eh": with_number("next_field", round(row["margin_mV"], -1), "+.0f", " mV"),
+        "Next field along pH": with_number("next_field_pH", row["margin_pH"], "+.2f"),
+        "Status": row["status"],
+    }
 
 
 def _findings(result: Result) -> str:
