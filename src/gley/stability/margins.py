@@ -97,16 +97,19 @@ def along_pH(
     target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, field: np.ndarray, choice: Choice
 ) -> tuple[np.ndarray, np.ndarray]:
     """Signed change of pH at constant Eh to the nearest other field in pH 0-14 (NaN = none) and its member."""
-    up, above = _march(target, bath, pe, log_total, field, choice, +1)
-    down, below = _march(target, bath, pe, log_total, field, choice, -1)
+    up, above = _march(target, bath, pe, log_total, field, choice, +1, np.full(len(pe), np.inf))
+    # beyond the nearer one nothing is asked
+    down, below = _march(target, bath, pe, log_total, field, choice, -1, up)
     rising = up <= down
     reached = np.isfinite(np.minimum(up, down))
     distance = np.where(rising, up, -down)
     return np.where(reached, distance, np.nan), np.where(reached, np.where(rising, above, below), -1)
 
 
-def _march(target, bath, pe, log_total, field, choice, direction) -> tuple[np.ndarray, np.ndarray]:
-    """Distance in pH to the first other field in one direction (inf = none to pH 0 or 14) and that field's member."""
+def _march(target, bath, pe, log_total, field, choice, direction, reach) -> tuple[np.ndarray, np.ndarray]:
+    """Distance in pH to the first other field in one direction (inf = none to pH 0 or 14, or within `reach`), and
+    that field's member.
+    """
     start = bath.X[:, 3]
     distance, beyond = np.full(len(pe), np.inf), np.full(len(pe), -1)
     position, going = start.copy(), np.arange(len(pe))
@@ -123,7 +126,7 @@ def _march(target, bath, pe, log_total, field, choice, direction) -> tuple[np.nd
             root, member = _bisect(target, bath, pe, log_total, field, choice, rows, position[rows], ahead[changed])
             distance[rows], beyond[rows] = np.abs(root - start[rows]), member
         position[going] = ahead
-        going = going[~changed & (ahead != limit)]
+        going = going[~changed & (ahead != limit) & (np.abs(ahead - start[going]) < reach[going])]
     return distance, beyond
 
 
