@@ -123,6 +123,28 @@ def check(
     _exit_on_data_error(findings)
 
 
+@app.command()
+def explain(
+    survey: Annotated[Path, typer.Argument(help="Survey file.")],
+    sample: Annotated[str, typer.Argument(help="Name of the sample.")],
+    element: Annotated[str, typer.Argument(help="Only this element, e.g. Fe.")] = "",
+    settings: SettingsFile = None,
+    electrode: Electrode = "",
+    as_json: AsJson = False,
+) -> None:
+    """Show one sample's working: every number a reviewer would compute again by hand.
+
+    Example: gley explain survey.xlsx MW-3 As
+    """
+    from gley.explain import explain as work
+    from gley.explain import explain_text
+    from gley.survey import read_survey
+
+    chosen = _settings(settings, electrode, "")
+    record = work(read_survey(survey, chosen), sample, (element,) if element else (), chosen)
+    _answer(as_json, lambda: record, lambda: explain_text(record))
+
+
 @app.command(context_settings={"ignore_unknown_options": True})
 def eh(
     readings: Annotated[list[str], typer.Argument(help="ORP readings in mV; negative ones too.")],

@@ -92,7 +92,7 @@ def test_version_and_bare_call(capsys):
     assert "check" in out
 
 
-@pytest.mark.parametrize("name", ["run", "check", "eh", "chart", "data", "sheet"])
+@pytest.mark.parametrize("name", ["run", "check", "explain", "eh", "chart", "data", "sheet"])
 def test_every_command_has_help_with_an_example(capsys, name):
     code, out, _ = answer(capsys, name, "--help")
     assert code == 0

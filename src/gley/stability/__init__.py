@@ -9,6 +9,7 @@ from gley.stability.chart_types import Boundary, Chart, Conditions, Field
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
 from gley.stability.reference import reference
 from gley.stability.water import IMPLAUSIBLE_mV, beyond_water, water_lines
+from gley.stability.working import working
 
 __all__ = [
     "CHART_ONLY",
@@ -26,5 +27,5 @@ __all__ = [
     "measured_elements",
     "reference",
     "species",
-    "water_lines",
+    "water_lines", "working",
 ]  # fmt: skip

@@ -59,7 +59,7 @@ class Setting:
                     columns[channel] = self._companion(X, environment, int(candidate))
                 elif channel != "Fe":
                     tied = state.strip() if channel in SULFUR else ""
-                    columns[channel] = _largest(tied or channel, X)
+                    columns[channel] = largest(tied or channel, X)
             table.append([{channel: column[s] for channel, column in columns.items()} for s in range(len(middle))])
         return table
 
@@ -69,7 +69,8 @@ class Setting:
         return [iron.members[k] for k in lines.forms(np.full(len(X), candidate))]
 
 
-def _largest(channel: str, X: np.ndarray) -> list[Species]:
+def largest(channel: str, X: np.ndarray) -> list[Species]:
+    """The largest form of a ligand channel (or pure sulfur) at each row of features (n, 7)."""
     if channel == "S(0)":
         return [species()["sulfur (rhombic)"]] * len(X)
     return [pool(channel)[k] for k in pool_terms(channel, X).argmax(axis=1)]
