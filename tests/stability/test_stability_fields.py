@@ -7,7 +7,7 @@ import pytest
 from waters_made_up import random_waters, settings, solved
 
 from gley.columns import columns
-from gley.stability import assign, margins
+from gley.stability import assign, march
 from gley.stability.water import ionic_strength
 
 CHLORIDES = ("FeCl^+", "FeCl^2+", "MnCl^+")
@@ -33,7 +33,7 @@ def _no_margins_along_pH(monkeypatch):
     def none(target, bath, pe, log_total, field, choice):
         return np.full(len(pe), np.nan), np.full(len(pe), -1)
 
-    monkeypatch.setattr(margins, "along_pH", none)
+    monkeypatch.setattr(march, "along_pH", none)
 
 
 @pytest.mark.parametrize("element", ["Fe", "Mn", "As", "S"])

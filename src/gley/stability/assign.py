@@ -9,7 +9,7 @@ from gley.columns import columns, constituents
 from gley.constants import nernst_slope_mV
 from gley.errors import UsageError
 from gley.settings import Settings
-from gley.stability import certainty, margins
+from gley.stability import certainty, march, margins
 from gley.stability.data import CHART_ONLY, OFFERED, check_names
 from gley.stability.solve import Choice, Solved, solve
 from gley.stability.systems import System, away_from_25
@@ -160,7 +160,7 @@ def _fill(table, status, rows, element, target, ready, spread, tied, choice, set
         return np.array([text(item) for item in target.members], dtype=object)[solved.field]
 
     margin_pe, next_E = margins.along_pe(target, bath, pe, log_total, solved.field, choice)
-    margin_pH, next_pH = margins.along_pH(target, bath, pe, log_total, solved.field, choice)
+    margin_pH, next_pH = march.along_pH(target, bath, pe, log_total, solved.field, choice)
     odds = certainty.probabilities(target, bath, pe, log_total, spread.take(rows), choice, stated)
     _put(table, rows, {
         "field": named(solved.field),
