@@ -11,7 +11,7 @@ SOURCE = Path(gley.__file__).parent
 FILES = sorted(SOURCE.rglob("*.py"))
 FOUNDATION = ("errors", "constants", "formula", "columns", "units", "findings", "settings", "jsonform")
 ROOMS = ("survey", "probe", "stability", "evidence", "site", "drawing", "delivery")
-TOP = ("charts", "pipeline", "wording", "explain", "cli")
+TOP = ("bulk", "charts", "pipeline", "wording", "explain", "cli")
 ORDER = {name: level for level, name in enumerate((*ROOMS, *TOP), start=1)} | dict.fromkeys(FOUNDATION, 0)
 MAX_FILE_LINES, MAX_FUNCTION_LINES = 400, 50
 

@@ -13,6 +13,7 @@ _WHERE = {
     "load_settings": "gley.settings:load",
     "read_survey": "gley.survey",
     "assign": "gley.stability",
+    "assign_file": "gley.bulk",
     "chart": "gley.stability",
     "run": "gley.pipeline",
     "write": "gley.pipeline",

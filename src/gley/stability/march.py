@@ -72,7 +72,7 @@ def _march(target, bath, pe, log_total, field, choice, direction, reach) -> tupl
 
 
 def _bisect(target, bath, pe, log_total, field, choice, rows, ends) -> tuple[np.ndarray, np.ndarray]:
-    """pH where the field changes between the ends (pH in the own field, pH in another, its field), and the next field."""
+    """pH where the field changes, and the field beyond; `ends` are a pH in the own field, one in another, its field."""
     near, far, member = ends
     part = bath.take(rows)
     for _ in range(_HALVINGS):  # always as many, so that the answer doesn't hang on a sample's neighbours
