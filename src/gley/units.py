@@ -6,10 +6,14 @@ constituent's own formula (`columns.Constituent.formula`).
 
 import re
 from dataclasses import dataclass
+from functools import cache
 
+from gley.errors import GleyError
 from gley.formula import molar_mass, parse
 
-_MICRO = str.maketrans({"μ": "u", "µ": "u", "−": "-", "–": "-", "²": "2", "³": "3"})
+_MICRO = str.maketrans(
+    {"μ": "u", "µ": "u", "−": "-", "–": "-", "⁻": "-", "¹": "1", "²": "2", "³": "3", "º": "°", "⋅": "·"}
+)
 
 # kind, factor to the house unit (g/L, mol/L, eq/L, mV, °C, µS/cm, m, cm)
 _SPELLINGS: dict[str, tuple[str, float]] = {
@@ -28,7 +32,16 @@ _SPELLINGS: dict[str, tuple[str, float]] = {
     "deg": ("angle", 1.0), "%": ("percent", 1.0), "%sat": ("percent", 1.0), "-": ("none", 1.0),
     "none": ("none", 1.0), "ph": ("none", 1.0), "phunits": ("none", 1.0), "units": ("none", 1.0),
     "stdunits": ("none", 1.0), "su": ("none", 1.0),
+    "mvolt": ("potential", 1.0), "mvolts": ("potential", 1.0), "celsius": ("temperature", 1.0),
+    "degreesc": ("temperature", 1.0), "degcelsius": ("temperature", 1.0), "fahrenheit": ("fahrenheit", 1.0),
+    "degrees": ("angle", 1.0), "dd": ("angle", 1.0), "decimaldegrees": ("angle", 1.0), "percent": ("percent", 1.0),
+    "%saturation": ("percent", 1.0), "%saturatn": ("percent", 1.0), "ntu": ("turbidity", 1.0),
+    "fnu": ("turbidity", 1.0), "mbgl": ("length", 1.0), "mbgs": ("length", 1.0), "masl": ("length", 1.0),
 }  # fmt: skip
+
+# mM differs from millimetre by case alone; a bare M is the metre of headers in capitals
+_MOLAR = {"mM": 1e-3, "uM": 1e-6, "nM": 1e-9}
+_EQUIVALENTS_OF_CaCO3 = 2
 
 
 @dataclass(frozen=True)
@@ -41,17 +54,22 @@ class Unit:
     text: str
 
 
+@cache
 def recognise(text: str | None) -> Unit | None:
     """The unit a spelling means, or None when it isn't one we know (never a guess).
 
-    Knows both micro signs, ``l-1`` for ``/l``, ``@25C`` behind conductivity, and a basis after ``as`` or a space.
+    Knows both micro signs, ``l-1`` and ``/litre`` for ``/l``, ``mM``, ``@25C`` behind conductivity, and a basis after
+    ``as``, in parentheses, behind a space or before the litre: ``mg/L (as CaCO3)``, ``mg N/L``.
     """
     if text is None or not str(text).strip():
         return None
     shown = " ".join(str(text).split())
     plain = shown.translate(_MICRO)
-    plain = re.sub(r"\s*@\s*25\s*°?\s*c$|\s*\(?25\s*°\s*c\)?$", "", plain, flags=re.IGNORECASE)
+    plain = re.sub(r"\s*(?:@|at)\s*25\s*°?\s*c$|\s*\(?25\s*°\s*c\)?$", "", plain, flags=re.IGNORECASE)
+    plain = re.sub(r"(?i)/\s*lit(?:er|re)\b", "/L", plain)
     head, basis = _split_basis(plain)
+    if head in _MOLAR:
+        return Unit("amount", _MOLAR[head], basis, shown)
     key = re.sub(r"[\s°º.]", "", head).lower()
     key = re.sub(r"(?:\*|·)?l\^?-1$", "/l", key)
     key = re.sub(r"(?:\*|·)?cm\^?-1$", "/cm", key)
@@ -65,18 +83,19 @@ def recognise(text: str | None) -> Unit | None:
 
 def _split_basis(text: str) -> tuple[str, str]:
     """`mg/L as N` → (`mg/L`, `N`); `mg NO3/L` → (`mg/L`, `NO3`). A basis that isn't a formula stays in the head."""
-    found = re.match(r"^(\S+?/\s*[lL]|ppm|ppb|\S+/kg)\s*\(?(?:-|as)?\s*\(?([A-Z][A-Za-z0-9()]*)\)?\)?$", text)
+    found = re.match(r"^(\S+?/\s*[lL]|ppm|ppb|\S+/kg)\s*\(?\s*(?:-|as)?\s*\(?([A-Z][A-Za-z0-9]*(?:-[NPSC])?)\)*$", text)
     if not found:
-        swapped = re.match(r"^([mun]?(?:g|mol))\s+([A-Z][A-Za-z0-9()]*)\s*/\s*([lL])$", text)
+        swapped = re.match(r"^([mun]?(?:g|mol))[\s-]*([A-Z][A-Za-z0-9]*)\s*/\s*([lL])$", text)
         if not swapped:
             return text, ""
         head, basis = f"{swapped.group(1)}/{swapped.group(3)}", swapped.group(2)
     else:
-        head, basis = found.group(1), found.group(2)
+        # `NO3-N` counts the nitrogen of nitrate
+        head, basis = found.group(1), found.group(2).rpartition("-")[2]
     try:
         parse(basis)
         molar_mass(basis)
-    except Exception:
+    except GleyError:
         return text, ""
     return head, basis
 
@@ -97,11 +116,17 @@ def mol_per_L(value: float, unit: Unit, formula: str, element: str, charge: int)
     charge : int
         Charge number of the constituent, for eq/L.
 
+    Counted as CaCO3 (hardness, bicarbonate alkalinity), one mole stands for two equivalents of an ion, as is usual;
+    of an uncharged constituent for the atoms it holds.
+
     Raises
     ------
     ValueError
         When the unit isn't a concentration, the basis doesn't hold the element, or the constituent has no charge.
     """
+    if unit.basis == "CaCO3" and unit.kind in ("mass", "amount") and charge:
+        weight = molar_mass("CaCO3") if unit.kind == "mass" else 1.0
+        return value * unit.factor / weight * _EQUIVALENTS_OF_CaCO3 / abs(charge)
     if unit.kind == "amount":
         return value * unit.factor
     if unit.kind == "charge":

@@ -1,4 +1,4 @@
-"""Sheets and files as a whole: several tables, footnotes, merged cells, facts, and damage that must not be passed over."""
+"""Sheets and files as a whole: several tables, footnotes, merged cells, facts, and damage not to be passed over."""
 
 import zipfile
 
@@ -123,6 +123,14 @@ def test_electrodes_of_two_files_hold_for_their_own_rows(tmp_path):
     assert survey.facts["electrode"] == "calomel, saturated KCl"
     assert list(survey.samples["electrode"]) == ["", "Ag/AgCl, 3 M KCl"]
     assert said(survey, "survey.fact_of_its_rows") == [("A1", "Ag/AgCl, 3 M KCl")]
+
+
+def test_fact_twice_in_one_sheet_the_first_holds_and_it_is_said(tmp_path):
+    lines = "# electrode: calomel, saturated KCl", "# electrode: Ag/AgCl, 3 M KCl"
+    survey = read_survey(write(tmp_path, "s.csv", *lines, "Sample;ORP (mV);pH", "W1;5;7"))
+    assert survey.facts["electrode"] == "calomel, saturated KCl"
+    assert list(survey.samples["electrode"]) == [""]
+    assert said(survey, "survey.fact_twice") == [("A2", "Ag/AgCl, 3 M KCl")]
 
 
 def test_open_quotation_is_refused(tmp_path):

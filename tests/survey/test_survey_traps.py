@@ -209,6 +209,22 @@ def test_times_of_half_days(tmp_path, cell, time):
     assert read(tmp_path, "Sample;Time;ORP (mV);pH", f"W1;{cell};5;7").samples.loc[0, "time"] == time
 
 
+def test_what_is_no_time_is_said(tmp_path):
+    assert said(read(tmp_path, "Sample;Time;ORP (mV);pH", "W1;noon;5;7"), "survey.not_a_time") == [("B2", "noon")]
+
+
+def test_bound_of_a_reading_is_not_used(tmp_path):
+    survey = read(tmp_path, "Sample;ORP (mV);pH", "W1;>200;7")
+    assert math.isnan(survey.samples.loc[0, "ORP_mV"])
+    assert said(survey, "survey.limit_not_used") == [("B2", ">200")]
+
+
+def test_conductivity_is_taken_at_25_degrees_and_said(tmp_path):
+    survey = read(tmp_path, "Sample;ORP (mV);pH;EC (mS/m)", "W1;5;7;50")
+    assert survey.samples.loc[0, "SC_uS_cm"] == 500
+    assert said(survey, "survey.conductivity_at_25") == [("D1", "EC (mS/m)")]
+
+
 def test_stated_column_of_another_table_is_no_crash(tmp_path):
     survey = read(tmp_path, "Sample;ORP (mV);pH;foo", "W1;5;7;3", columns={"foo": "screen_top_m"})
     assert said(survey, "survey.column_unknown") == [("D1", "foo")]

@@ -1,5 +1,7 @@
 """Concentrations as reported to mol/L, by unit and by what the number weighs; a unit is never guessed."""
 
+from functools import cache
+
 from gley.columns import Constituent
 from gley.formula import molar_mass, parse
 from gley.units import Unit, mol_per_L
@@ -35,8 +37,10 @@ def to_mol_L(value: float, unit: Unit, constituent: Constituent, basis: str) -> 
 
 def _equivalents(value: float, unit: Unit, basis: str) -> float:
     """Alkalinity in eq/L: mmol/L of acid capacity count one each, mg/L are CaCO3 unless said otherwise."""
-    if unit.kind in ("charge", "amount"):
+    if unit.kind == "charge":
         return value * unit.factor
+    if unit.kind == "amount":
+        return value * unit.factor * _EQUIVALENTS.get(unit.basis or basis, 1)
     if unit.kind != "mass":
         message = f"'{unit.text}' isn't a unit of alkalinity"
         raise ValueError(message)
@@ -47,6 +51,7 @@ def _equivalents(value: float, unit: Unit, basis: str) -> float:
     return value * unit.factor / molar_mass(weighed) * _EQUIVALENTS[weighed]
 
 
+@cache
 def slug(unit: Unit | None, basis: str, constituent: Constituent) -> str:
     """Unit as the end of a column name: `ug_L`, `mg_L_as_N`; a basis that is the constituent itself isn't repeated."""
     text = unit.text if unit else "as_delivered"

@@ -1,18 +1,31 @@
 """Reading a survey: files in, one `Survey` out; tables told by content, laboratory rows joined, samples named."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
+from dataclasses import dataclass, field
 from pathlib import Path
 
-from gley.errors import GleyError
-from gley.findings import Findings, Place
-from gley.settings import Settings
-from gley.survey.assemble import Record, amount_frames, frame, long_records, merge, places_of, records
+from gley.errors import GleyError, UsageError
+from gley.findings import Findings
+from gley.settings import Settings, SurveySettings
+from gley.survey.assemble import Record, amount_frames, frame, places_of
+from gley.survey.declared import Fact, electrodes_in_headers, facts_of_survey, give_to_rows
+from gley.survey.join import sample_rows
+from gley.survey.long import long_records
 from gley.survey.model import Origin, Survey
+from gley.survey.naming import name_samples
 from gley.survey.read import read_grids
+from gley.survey.rows import records
 from gley.survey.stated import check_stated
 from gley.survey.table import Table, find_tables
 
-_FIELD_VALUES = frozenset({"ORP_mV", "Eh_given_mV", "pH", "temperature_C", "depth_cm"})
+
+@dataclass
+class _Delivered:
+    """What the files hold: tables and facts in their order, and the files with their hashes."""
+
+    tables: list[Table] = field(default_factory=list)
+    facts: list[Fact] = field(default_factory=list)
+    inputs: list[dict[str, str]] = field(default_factory=list)
 
 
 def read_survey(paths: str | Path | Sequence[str | Path], settings: Settings | None = None) -> Survey:
@@ -33,154 +46,87 @@ def read_survey(paths: str | Path | Sequence[str | Path], settings: Settings | N
     Raises
     ------
     GleyError
-        When a file can't be read, or no table of samples is in any of them.
+        When a file can't be read, or no table of samples is in any of them; UsageError when no file, the same file
+        twice or a file of another kind is given.
     """
     stated = (settings or Settings()).survey
     check_stated(stated)
     findings = Findings()
     files = [Path(path) for path in ([paths] if isinstance(paths, (str, Path)) else paths)]
-    tables: list[Table] = []
-    facts: dict[str, str] = {}
-    inputs = []
-    for path in files:
-        grids, record = read_grids(path, stated.encoding, findings)
-        inputs.append(record)
-        for grid in grids:
-            found, written = find_tables(grid, stated.columns, findings)
-            tables += found
-            for key, (value, _) in written.items():
-                facts.setdefault(key, value)
-    of_kind = {
-        kind: [table for table in tables if table.kind == kind] for kind in ("samples", "stations", "checks", "long")
-    }
-    if not of_kind["samples"] and not of_kind["long"]:
-        names = ", ".join(str(path) for path in files)
-        message = f"{names}: no table of samples found."
-        cure = "A header row with a sample or station name and columns such as ORP (mV), pH or Fe (mg/L) is wanted;"
-        raise GleyError(message, f"{cure} templates/ holds a workbook.")
-    rows = _samples(of_kind["samples"], of_kind["long"], stated, findings)
-    stations = [row for table in of_kind["stations"] for row in records(table, stated, findings)]
-    checks = [row for table in of_kind["checks"] for row in records(table, stated, findings)]
-    name_samples(rows, findings)
-    amounts, reported = amount_frames(rows)
-    origin = Origin(
-        {
-            key: place
-            for kind, own in (("samples", rows), ("stations", stations), ("checks", checks))
-            for key, place in places_of(kind, own)
-        }
-    )
-    _say_lacking(rows, findings)
+    delivered = _deliver(files, stated, findings)
+    parts, stations, checks = _read(delivered.tables, files, stated, findings)
+    facts = facts_of_survey(delivered.facts, findings)
+    for rows in (*parts, checks):
+        give_to_rows(rows, delivered.facts, facts)
+    samples = sample_rows(parts, findings)
+    _say_station_twice(stations, findings)
+    name_samples(samples, findings)
+    _say_lacking(samples, findings)
+    amounts, reported = amount_frames(samples)
+    tables = {"samples": samples, "stations": stations, "checks": checks}
     return Survey(
-        samples=frame("samples", rows),
+        samples=frame("samples", samples),
         amounts=amounts,
         reported=reported,
         stations=frame("stations", stations),
         checks=frame("checks", checks),
         facts=facts,
-        origin=origin,
+        origin=Origin(dict(entry for kind, rows in tables.items() for entry in places_of(kind, rows))),
         findings=findings,
-        inputs=tuple(inputs),
+        inputs=tuple(delivered.inputs),
     )
 
 
-def _samples(wide: list[Table], long: list[Table], stated, findings: Findings) -> list[Record]:
-    """Sample rows of all tables; laboratory tables are joined to field rows of the same name."""
-    read = [records(table, stated, findings) for table in wide]
-    field = [rows for rows in read if _is_field(rows)] or read[:1]
-    rows = [row for part in field for row in part]
-    laboratory = [part for part in read if all(part is not other for other in field)]
-    laboratory += [long_records(table, findings) for table in long]
-    for part in laboratory:
-        _join(rows, part, bool(field), findings)
-    return rows
+def _deliver(files: Sequence[Path], stated: SurveySettings, findings: Findings) -> _Delivered:
+    """Tables and facts of all files."""
+    if not files:
+        message = "No survey file is given."
+        raise UsageError(message, "Name one or more .xlsx or .csv files.")
+    found = _Delivered()
+    for path in files:
+        grids, record = read_grids(path, stated.encoding, findings)
+        if record["sha256"] in [other["sha256"] for other in found.inputs]:
+            message = f"{path}: the same content is given twice."
+            raise UsageError(message, "Give every file once.")
+        found.inputs.append(record)
+        for grid in grids:
+            tables, written = find_tables(grid, stated.columns, findings)
+            found.tables += tables
+            reach = "sheet" if tables else "file"
+            found.facts += [Fact(key, value, place, reach) for key, value, place in written]
+    found.facts += electrodes_in_headers(found.tables, found.facts, findings)
+    return found
 
 
-def _is_field(rows: list[Record]) -> bool:
-    return any(_FIELD_VALUES & row.cells.keys() for row in rows)
+def _read(
+    tables: Sequence[Table], files: Sequence[Path], stated: SurveySettings, findings: Findings
+) -> tuple[list[list[Record]], list[Record], list[Record]]:
+    """Records of all tables: those of samples table by table, of stations and of checks."""
+    if not any(table.kind in ("samples", "long") for table in tables):
+        names = ", ".join(str(path) for path in files)
+        message = f"{names}: no table of samples found."
+        cure = "A header row with a sample or station name and columns such as ORP (mV), pH or Fe (mg/L) is wanted;"
+        raise GleyError(message, f"{cure} templates/ holds a workbook.")
+    parts: list[list[Record]] = []
+    own: dict[str, list[Record]] = {"stations": [], "checks": []}
+    for table in tables:
+        rows = long_records(table, stated, findings) if table.kind == "long" else records(table, stated, findings)
+        if table.kind in own:
+            own[table.kind] += rows
+        else:
+            parts.append(rows)
+    return parts, own["stations"], own["checks"]
 
 
-def _join(rows: list[Record], part: list[Record], said: bool, findings: Findings) -> None:
-    """Join laboratory records by exact sample name; those without a partner become rows of their own."""
-    by_name: dict[str, list[Record]] = {}
-    for row in rows:
-        by_name.setdefault(_key(row), []).append(row)
-    joined = 0
-    for other in part:
-        partners = by_name.get(_key(other), []) if _key(other) else []
-        if len(partners) == 1:
-            merge(partners[0], other, findings)
-            joined += 1
-            continue
-        if said:
-            rule = "survey.laboratory_ambiguous" if partners else "survey.laboratory_alone"
-            findings.add(rule, other.home, other.cells.get("sample", ""), count=len(partners))
-        rows.append(other)
-    if joined and part:
-        findings.add("survey.laboratory_joined", Place(part[0].home.file, part[0].home.sheet), joined, count=len(part))
-
-
-def _key(row: Record) -> str:
-    return str(row.cells.get("sample", "")).strip().casefold()
-
-
-def name_samples(rows: list[Record], findings: Findings) -> None:
-    """Give every row its own name: its sample name, else station with round, date or depth; repeats are numbered."""
-    for row in rows:
-        if not row.cells.get("sample"):
-            name = _composed(row)
-            row.cells["sample"] = name
-            if not row.cells.get("station"):
-                findings.add("survey.sample_unnamed", row.home, name)
-        if not row.cells.get("station"):
-            row.cells["station"] = row.cells["sample"]
-    _number_repeats(rows, findings)
-    for row in rows:
-        kind = str(row.cells.get("sample_type", "")).casefold()
-        if not kind and (_is_duplicate_name(row.cells["sample"]) or row.cells.get("duplicate_of")):
-            row.cells["sample_type"] = "duplicate"
-            findings.add("survey.duplicate_by_name", row.home, row.cells["sample"])
-
-
-def _composed(row: Record) -> str:
-    """A name from what else the row tells."""
-    parts = [str(row.cells.get("station", ""))]
-    if row.cells.get("round"):
-        parts.append(str(row.cells["round"]))
-    if row.cells.get("depth_cm") is not None:
-        parts.append(f"{row.cells['depth_cm']:g} cm")
-    if len(parts) == 1 and row.cells.get("date") is not None:
-        parts.append(row.cells["date"].date().isoformat())
-    parts = [part for part in parts if part]
-    return " ".join(parts) or f"row {row.home.cell.lstrip('ABCDEFGHIJKLMNOPQRSTUVWXYZ')}"
-
-
-def _number_repeats(rows: list[Record], findings: Findings) -> None:
-    """Names that come twice get the round or date, then a number."""
-    for name, group in _groups(rows):
-        if len(group) == 1:
-            continue
-        for row in group:
-            extra = row.cells.get("round") or (
-                row.cells["date"].date().isoformat() if row.cells.get("date") is not None else ""
-            )
-            row.cells["sample"] = f"{name} {extra}".strip()
-        findings.add("survey.name_repeated", group[1].home, name, count=len(group))
-    for name, group in _groups(rows):
-        for number, row in enumerate(group[1:], start=2):
-            row.cells["sample"] = f"{name} #{number}"
-
-
-def _groups(rows: Iterable[Record]) -> list[tuple[str, list[Record]]]:
-    found: dict[str, list[Record]] = {}
-    for row in rows:
-        found.setdefault(row.cells["sample"], []).append(row)
-    return list(found.items())
-
-
-def _is_duplicate_name(name: str) -> bool:
-    plain = name.casefold().replace(" ", "-").replace("_", "-")
-    return plain.endswith(("-dup", "-fd", "-duplicate", "-dup1"))
+def _say_station_twice(stations: list[Record], findings: Findings) -> None:
+    """A station that stands in two rows with different values: which is right can't be told, the last is used."""
+    first: dict[str, Record] = {}
+    for row in stations:
+        name = row.cells.get("station", "")
+        before = first.setdefault(name, row)
+        differs = [key for key in row.cells if before.cells.get(key) not in (None, "", row.cells[key])]
+        if before is not row and differs:
+            findings.add("survey.station_twice", row.home, name, columns=", ".join(differs))
 
 
 def _say_lacking(rows: list[Record], findings: Findings) -> None:
