@@ -152,3 +152,35 @@ def test_long_table_by_station_and_day(tmp_path):
     assert list(survey.samples["sample"]) == ["S1 2031-04-01", "S1 2031-05-01"]
     assert list(survey.samples["ORP_mV"]) == [100, 50]
     assert math.isnan(survey.samples.loc[1, "pH"])
+
+
+def test_german_laboratory_list_joins_a_german_field_sheet(tmp_path):
+    field = tmp_path / "feld.csv"
+    field.write_text(
+        "Messstelle;Redoxspannung (mV);pH-Wert;Leitf. (mS/m);Fe gelöst mg/l;Säurekapazität KS4,3 (mmol/l)\n"
+        "KB 1;120;7,1;61;0,5;4,2\nKB 2;-80;6,9;75;3,1;5,0\n",
+        encoding="utf-8",
+    )
+    laboratory = tmp_path / "labor.csv"
+    laboratory.write_text(
+        "Probe;Parameter;Messwert;Einheit;BG\nKB 1;Arsen;14;µg/l;1\nKB 2;Arsen;;µg/l;1\nKB 2;Nitrat;<0,5;mg/l;0,5\n",
+        encoding="utf-8",
+    )
+    survey = read_survey([field, laboratory])
+    assert list(survey.samples["station"]) == ["KB 1", "KB 2"]
+    assert list(survey.samples["SC_uS_cm"]) == [610, 750]
+    assert list(survey.amounts["alkalinity_eq_L"]) == pytest.approx([4.2e-3, 5.0e-3])
+    assert list(survey.amounts["As_limit"]) == ["", "<"]
+    assert list(survey.amounts["NO3_limit"]) == ["", "<"]
+    assert survey.reported.loc[1, "Fe_mg_L"] == "3,1"
+
+
+def test_file_that_holds_no_table_is_said_beside_one_that_does(tmp_path):
+    field = tmp_path / "field.csv"
+    field.write_text("Sample;ORP (mV);pH\nW1;1;7\n", encoding="utf-8")
+    other = tmp_path / "other.csv"
+    other.write_text("Probe;Colour;Smell;Taste;Mood\nW1;red;none;none;good\n", encoding="utf-8")
+    said = [
+        item.place.file for item in read_survey([field, other]).findings if item.rule == "survey.sheet_not_understood"
+    ]
+    assert said == ["other.csv"]

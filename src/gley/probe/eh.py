@@ -94,7 +94,8 @@ def _temperatures(survey, settings: Settings, findings: Findings) -> tuple[np.nd
     rest = np.isnan(used)
     assumed = settings.stability.assumed_temperature_C
     used, basis = np.where(rest, assumed, used), np.where(rest, f"assumed {assumed:g} °C", basis)
-    for i in np.flatnonzero(np.isnan(measured)):
+    has_reading = samples[["ORP_mV", "Eh_given_mV"]].notna().any(axis=1).to_numpy()
+    for i in np.flatnonzero(np.isnan(measured) & has_reading):
         where = survey.origin.place(samples.index[i], "temperature_C")
         findings.add("probe.no_temperature", where, f"{used[i]:.1f}", sample=samples["sample"].iloc[i], basis=basis[i])
     return used, basis

@@ -17,9 +17,10 @@ from gley.units import Unit, recognise
 KINDS = ("samples", "stations", "checks", "long")
 _BRACKET = re.compile(r"^(.*?)\s*[\(\[]\s*([^()\[\]]*(?:\([^()]*\))?[^()\[\]]*)\s*[\)\]]\s*$")
 _BESIDE_THE_POINT = re.compile(
-    r"(?i)(?<![A-Za-z])(field|dissolved|diss|filtered|filt|conc|value|measured|in situ)(?![A-Za-z])"
+    r"(?i)(?<![A-Za-z])(field|dissolved|diss|filtered|filt|conc|value|measured|in situ"
+    r"|gelöst|gel|filtriert)(?![A-Za-z])"
 )
-_FILTERED = re.compile(r"(?i)(?<![A-Za-z])(dissolved|diss|filtered|filt|gelöst)(?![A-Za-z])")
+_FILTERED = re.compile(r"(?i)(?<![A-Za-z])(dissolved|diss|filtered|filt|gelöst|gel|filtriert)(?![A-Za-z])")
 _TOTAL = re.compile(r"(?i)(?<![A-Za-z])(total|tot|unfiltered|unfilt|recoverable|t)(?![A-Za-z])")
 _STATE = re.compile(r"\(\s*(?:III|II|IV|VII|VI|V|I)\s*\)")
 _AS = re.compile(r"[\s_-]\(?as[\s_-]+\(?[A-Z][A-Za-z0-9]*\)?\s*$")

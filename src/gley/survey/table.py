@@ -10,6 +10,7 @@ from gley.survey.read import Grid, is_comment
 from gley.units import Unit, recognise
 
 _SEARCHED_ROWS = 60
+_MOST_BESIDE = 2  # cells beside a fact's key; a row of more is a header
 _GERMAN_SAMPLE = "probe"
 _STATISTIC = r"mean|average|avg|median|total|sum|min(?:imum)?|max(?:imum)?|std|sd|standard deviation|count|mittelwert"
 _CLOSING = re.compile(
@@ -168,7 +169,7 @@ def _facts(grid: Grid, end: int) -> Iterator[tuple[str, str, Place]]:
             # in a text file the separator may stand within the value: `electrode: Ag/AgCl, 3 M KCl`
             parts = [found.group(2).strip(), *(rest if grid.delimiter else ())]
             yield key, _joined(parts, grid.delimiter), grid.place(r, c)
-        elif rest and plain(str(first).lstrip("# ").rstrip(": ")) in fact_keys():
+        elif 0 < len(rest) <= _MOST_BESIDE and plain(str(first).lstrip("# ").rstrip(": ")) in fact_keys():
             value = _joined(rest, grid.delimiter) if grid.delimiter else rest[0]
             yield fact_keys()[plain(str(first).lstrip("# "))], value, grid.place(r, filled[1][0])
 
