@@ -2,6 +2,7 @@
 
 from gley.delivery.folder import refuse, restore
 from gley.delivery.result import ChartSheet, Result
+from gley.delivery.sheets import draw, from_record
 from gley.delivery.write import write, write_charts
 
-__all__ = ["ChartSheet", "Result", "refuse", "restore", "write", "write_charts"]
+__all__ = ["ChartSheet", "Result", "draw", "from_record", "refuse", "restore", "write", "write_charts"]

@@ -60,6 +60,7 @@ def stamp(result: Result) -> dict[str, Any]:
         "packages": {name: version(name) for name in _PACKAGES},
         "inputs": [dict(item) for item in result.survey.inputs],
         "data": data_hashes(),
+        "data_version": data_version(),
         "settings": result.settings.as_dict(),
         "facts": dict(result.survey.facts),
         "elements": list(result.elements),

@@ -11,6 +11,7 @@ from openpyxl.utils import get_column_letter
 from gley.delivery.folder import build
 from gley.delivery.page import page
 from gley.delivery.result import ChartSheet, Result
+from gley.delivery.sheets import as_record, draw
 from gley.delivery.stamp import data_version, made_at, stamp
 from gley.delivery.tables import boundary_table, finding_table, printed, sample_table
 from gley.drawing import EphChart, SiteMap
@@ -75,6 +76,10 @@ def _workbook(result: Result, samples: pd.DataFrame, path: Path) -> None:
         for name, frame in sheets.items():
             frame.to_excel(book, sheet_name=name, index=False)
             sheet = book.sheets[name]
+            for row in sheet.iter_rows():
+                for cell in row:
+                    if cell.data_type == "f":  # a name from the survey such as =A1 is text, not a formula
+                        cell.data_type = "s"
             sheet.freeze_panes = "B2"
             sheet.auto_filter.ref = sheet.dimensions
             for c, column in enumerate(frame, start=1):
@@ -118,25 +123,8 @@ def _chart(sheet: ChartSheet, folder: Path, dpi: int) -> None:
     """One chart as drawing, as data, and its lines as a table."""
     for part in ("charts", "boundaries"):
         (folder / part).mkdir(exist_ok=True)
-    drawn = EphChart().draw(sheet.chart, title=sheet.title)
-    if sheet.fan is not None:
-        drawn = drawn.fan(*sheet.fan)
-    if sheet.over is not None:
-        drawn = drawn.over(sheet.over)
-    drawn = drawn.points(sheet.points)
-    drawn.caption([*sheet.notes, f"Drawn at {sheet.reference}. Data {data_version()}."])
-    drawn.save(folder / "charts" / sheet.key, dpi=dpi)
-    record = {
-        "key": sheet.key,
-        "title": sheet.title,
-        "reference": sheet.reference,
-        "notes": list(sheet.notes),
-        "chart": sheet.chart.as_dict(),
-        "over": sheet.over.as_dict() if sheet.over else None,
-        "fan": [item.as_dict() for item in sheet.fan] if sheet.fan else None,
-        "points": sheet.points.to_dict("records"),
-    }
-    _json(record, folder / "charts" / f"{sheet.key}.json")
+    draw(sheet).save(folder / "charts" / sheet.key, dpi=dpi)
+    _json(as_record(sheet), folder / "charts" / f"{sheet.key}.json")
     if sheet.over is None:
         _csv(boundary_table(sheet.chart), folder / "boundaries" / f"{sheet.key}.csv")
 
