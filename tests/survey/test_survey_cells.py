@@ -5,18 +5,8 @@ import math
 import pytest
 
 from gley.formula import molar_mass
-from gley.settings import Settings
 from gley.survey import read_survey
-
-
-def read(tmp_path, *lines, **survey):
-    path = tmp_path / "s.csv"
-    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    return read_survey(path, Settings().replace(survey=survey))
-
-
-def said(survey, rule):
-    return [(item.place.cell, item.value) for item in survey.findings if item.rule == rule]
+from survey_files import read, said
 
 
 @pytest.mark.parametrize(

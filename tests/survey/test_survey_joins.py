@@ -5,19 +5,7 @@ import math
 import pytest
 
 from gley.survey import read_survey
-
-
-def write(tmp_path, name, *lines):
-    path = tmp_path / name
-    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    return path
-
-
-def said(survey, rule):
-    return [(item.place.file, item.place.cell, item.value) for item in survey.findings if item.rule == rule]
-
-
-FIELD = ("Sample;ORP (mV);pH;T (°C)", "W1;100;7,1;11", "W2;-20;6,9;10")
+from survey_files import FIELD, places, write
 
 
 def test_laboratory_table_with_pH_joins_and_its_pH_is_the_laboratory_s(tmp_path):
@@ -26,8 +14,8 @@ def test_laboratory_table_with_pH_joins_and_its_pH_is_the_laboratory_s(tmp_path)
     assert list(survey.samples["pH"]) == [7.1, 6.9]
     assert list(survey.samples["pH_lab"]) == [7.6, 7.5]
     assert list(survey.samples["temperature_C"]) == [11, 10]
-    assert said(survey, "survey.pH_of_laboratory") == [("b.csv", "B2", "7.6")]
-    assert said(survey, "survey.bench_temperature") == [("b.csv", "C2", "20")]
+    assert places(survey, "survey.pH_of_laboratory") == [("b.csv", "B2", "7.6")]
+    assert places(survey, "survey.bench_temperature") == [("b.csv", "C2", "20")]
 
 
 def test_field_sheet_in_two_parts_keeps_its_pH(tmp_path):
@@ -42,7 +30,7 @@ def test_join_by_station_where_no_sample_is_named(tmp_path):
     field = write(tmp_path, "a.csv", "Well;Date;ORP (mV);pH", "W1;2031-04-01;100;7", "W2;2031-04-01;50;7")
     survey = read_survey([field, write(tmp_path, "b.csv", "Well;Fe (mg/L)", "w2;2", "W1;1")])
     assert list(survey.reported["Fe_mg_L"]) == ["1", "2"]
-    assert said(survey, "survey.laboratory_loosely") == [("b.csv", "", "2")]
+    assert places(survey, "survey.laboratory_loosely") == [("b.csv", "", "2")]
 
 
 def test_rounds_at_one_station_join_by_their_day(tmp_path):
@@ -50,7 +38,7 @@ def test_rounds_at_one_station_join_by_their_day(tmp_path):
     lab = write(tmp_path, "b.csv", "Well;Date;Fe (mg/L)", "W1;2031-05-01;5", "W1;2031-01-01;1", "W1;2031-09-01;9")
     survey = read_survey([field, lab])
     assert list(survey.reported["Fe_mg_L"]) == ["1", "5", "9"]
-    assert said(survey, "survey.laboratory_alone") == [("b.csv", "A4", "W1")]
+    assert places(survey, "survey.laboratory_alone") == [("b.csv", "A4", "W1")]
 
 
 def test_exact_name_comes_before_one_in_other_case(tmp_path):
@@ -63,7 +51,7 @@ def test_several_rows_that_fit_are_not_chosen_from(tmp_path):
     field = write(tmp_path, "a.csv", "Well;ORP (mV);pH", "W1;1;7", "W1;2;7")
     survey = read_survey([field, write(tmp_path, "b.csv", "Well;Fe (mg/L)", "W1;2")])
     assert len(survey.samples) == 3
-    assert said(survey, "survey.laboratory_ambiguous") == [("b.csv", "A2", "W1")]
+    assert places(survey, "survey.laboratory_ambiguous") == [("b.csv", "A2", "W1")]
 
 
 def test_two_rounds_in_two_files_stay_two_samples(tmp_path):
@@ -76,13 +64,13 @@ def test_field_value_twice_and_different_is_said(tmp_path):
     field = write(tmp_path, "a.csv", "Sample;ORP (mV);pH;SC (µS/cm)", "W1;1;7;500")
     survey = read_survey([field, write(tmp_path, "b.csv", "Sample;SC (µS/cm);Fe (mg/L)", "W1;510;1")])
     assert survey.samples.loc[0, "SC_uS_cm"] == 500
-    assert said(survey, "survey.value_twice") == [("b.csv", "B2", "510")]
+    assert places(survey, "survey.value_twice") == [("b.csv", "B2", "510")]
 
 
 def test_same_value_in_another_unit_is_no_contradiction(tmp_path):
     field = write(tmp_path, "a.csv", "Sample;ORP (mV);pH;Fe (mg/L)", "W1;1;7;0.1")
     survey = read_survey([field, write(tmp_path, "b.csv", "Sample;Fe (µg/L)", "W1;100")])
-    assert said(survey, "survey.value_twice") == []
+    assert places(survey, "survey.value_twice") == []
 
 
 def test_numbered_names_avoid_those_that_are_there(tmp_path):
@@ -103,8 +91,8 @@ def test_long_table_takes_the_filtered_result(tmp_path):
     rows = "W1;Iron;Total;9;mg/L;;", "W1;Iron;Dissolved;1;mg/L;;", "W1;Lead;Total;8;mg/L;;"
     survey = read_survey([write(tmp_path, "a.csv", *FIELD), write(tmp_path, "b.csv", LONG, *rows)])
     assert survey.reported.loc[0, "Fe_mg_L"] == "1"
-    assert said(survey, "survey.fraction_left") == [("b.csv", "D2", "9")]
-    assert said(survey, "survey.total_taken") == [("b.csv", "D4", "Lead")]
+    assert places(survey, "survey.fraction_left") == [("b.csv", "D2", "9")]
+    assert places(survey, "survey.total_taken") == [("b.csv", "D4", "Lead")]
 
 
 @pytest.mark.parametrize(
@@ -124,24 +112,24 @@ def test_long_table_non_detects(tmp_path, result, flag, limit, shown, bound):
     )
     assert survey.reported.loc[0, "As_ug_L"] == shown
     assert survey.amounts.loc[0, "As_limit"] == bound
-    assert len(said(survey, "survey.flagged")) == (flag == "J")
+    assert len(places(survey, "survey.flagged")) == (flag == "J")
 
 
 def test_long_table_rejected_result_is_not_used(tmp_path):
     survey = read_survey([write(tmp_path, "a.csv", *FIELD), write(tmp_path, "b.csv", LONG, "W1;As;;1;µg/L;R;")])
     assert "As_mol_L" not in survey.amounts
-    assert said(survey, "survey.rejected") == [("b.csv", "D2", "1")]
+    assert places(survey, "survey.rejected") == [("b.csv", "D2", "1")]
 
 
 def test_long_table_limit_without_a_result_is_said(tmp_path):
     survey = read_survey([write(tmp_path, "a.csv", *FIELD), write(tmp_path, "b.csv", LONG, "W1;As;;;µg/L;;2")])
     assert survey.amounts.loc[0, "As_limit"] == "<"
-    assert said(survey, "survey.limit_alone") == [("b.csv", "D2", "As")]
+    assert places(survey, "survey.limit_alone") == [("b.csv", "D2", "As")]
 
 
 def test_long_table_unknown_unit_is_named(tmp_path):
     survey = read_survey([write(tmp_path, "a.csv", *FIELD), write(tmp_path, "b.csv", LONG, "W1;As;;1;buckets;;")])
-    assert said(survey, "survey.unit_unknown") == [("b.csv", "D2", "buckets")]
+    assert places(survey, "survey.unit_unknown") == [("b.csv", "D2", "buckets")]
     assert survey.findings.of("error")
 
 

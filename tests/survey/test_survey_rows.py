@@ -3,19 +3,7 @@
 import pytest
 
 from gley.survey import read_survey
-
-
-def write(tmp_path, name, *lines):
-    path = tmp_path / name
-    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    return path
-
-
-def places(survey, rule):
-    return [(item.place.file, item.place.cell, item.value) for item in survey.findings if item.rule == rule]
-
-
-FIELD = ("Sample;ORP (mV);pH;T (°C)", "W1;100;7,1;11", "W2;-20;6,9;10")
+from survey_files import FIELD, places, write
 
 
 def test_wide_laboratory_file_joins_by_name(tmp_path):

@@ -9,12 +9,7 @@ from hypothesis import strategies as st
 
 from gley.errors import GleyError, UsageError
 from gley.survey import read_survey
-
-
-def write(tmp_path, name, *lines):
-    path = tmp_path / name
-    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    return path
+from survey_files import write
 
 
 def book(tmp_path, *rows, merge=""):

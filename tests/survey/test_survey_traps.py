@@ -4,20 +4,9 @@ import math
 
 import pytest
 
-from gley.settings import Settings
-from gley.survey import read_survey
 from gley.survey.headers import understand
 from gley.units import recognise
-
-
-def read(tmp_path, *lines, **survey):
-    path = tmp_path / "s.csv"
-    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
-    return read_survey(path, Settings().replace(survey=survey))
-
-
-def said(survey, rule):
-    return [(item.place.cell, item.value) for item in survey.findings if item.rule == rule]
+from survey_files import read, said
 
 
 def test_Eh_brought_to_pH_7_is_not_a_reading(tmp_path):
