@@ -9,8 +9,9 @@ import pandas as pd
 
 from gley import delivery, evidence, probe, site, stability
 from gley.charts import chart_sheets, with_background
-from gley.columns import amount_column
+from gley.columns import amount_column, columns
 from gley.delivery import Result
+from gley.errors import UsageError
 from gley.findings import Findings, Place
 from gley.settings import Settings
 from gley.survey import Survey, read_survey
@@ -51,7 +52,7 @@ def run(
     # a map that can't be drawn is refused before the long part of the work
     places = site.places(survey, settings, findings)
     elements, settings = choose_elements(survey, settings, findings)
-    fields = stability.assign(waters, elements, settings)
+    fields = set_aside(stability.assign(waters, elements, settings), waters)
     _status_findings(fields, findings)
     clock.lap("stability")
     process = evidence.process_table(survey.amounts, settings)
@@ -80,6 +81,10 @@ def check(survey: Survey, settings: Settings) -> tuple[pd.DataFrame, Findings]:
     findings = Findings(survey.findings)
     eh = probe.to_Eh(survey, settings, findings)
     water_line_findings(engine_table(survey, eh), survey, findings)
+    try:
+        site.places(survey, settings, findings)
+    except UsageError as error:
+        findings.add("site.will_refuse", value=error.message, cure=error.cure)
     return eh, findings
 
 
@@ -103,6 +108,18 @@ def water_line_findings(waters: pd.DataFrame, survey: Survey, findings: Findings
             f"{sample['Eh_mV']:.0f}", pH=f"{sample['pH']:.2f}", beyond=f"{abs(beyond[row]):.0f}",
             side="above" if beyond[row] > 0 else "below",
         )  # fmt: skip
+
+
+def set_aside(fields: pd.DataFrame, waters: pd.DataFrame) -> pd.DataFrame:
+    """Fields without those of samples whose potential no water can have: they keep their rows, with the reason."""
+    table = fields.copy()
+    beyond = stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
+    wrong = table["sample"].isin(waters.loc[np.abs(beyond) > stability.IMPLAUSIBLE_mV, "sample"])
+    for name, column in columns("fields").items():
+        if name != "status":
+            table.loc[wrong, name] = np.nan if column.dtype == "number" else ""
+    table.loc[wrong, "status"] = "not assigned: Eh outside water's stability"
+    return table
 
 
 def choose_elements(survey: Survey, settings: Settings, findings: Findings) -> tuple[tuple[str, ...], Settings]:

@@ -43,9 +43,9 @@ PUBLISHED = [
     (0.2, 0.1, 500, 200, 20, 2.0, "anoxic", "SO4"),  # ratio 0.1
     (0.2, 0.1, 500, 2000, 0.2, 0.01, "anoxic", "CH4"),
     (2.0, 0.1, 100, 20, 20, 0.01, "mixed (oxic-anoxic)", "O2-Mn(IV)"),
-    (2.0, 0.1, 10, 200, 20, 0.01, "mixed (oxic-anoxic)", "O2-Fe(III)"),
+    (2.0, 0.1, 10, 200, 20, 0.01, "mixed (oxic-anoxic)", "O2-Fe(III)/SO4"),
     (0.2, 3.0, 100, 20, 20, 0.01, "mixed (anoxic)", "NO3-Mn(IV)"),
-    (0.2, 3.0, 10, 200, 20, 2.0, "mixed (anoxic)", "NO3-SO4"),
+    (0.2, 3.0, 10, 200, 20, 2.0, "mixed (anoxic)", "NO3-Fe(III)/SO4"),
 ]
 
 
@@ -118,7 +118,7 @@ def test_iron_without_nitrate_is_anoxic_by_one_process_or_two():
     found = decide(O2=0.1, Mn=100, Fe=500, SO4=20, sulfide=0.001)
     assert found["redox_category"] == "anoxic"
     assert found["redox_process"] == "undetermined"
-    assert "leaves open Fe(III) or NO3-Fe(III)" in found["process_basis"]
+    assert "leaves open Fe(III) or NO3-Fe(III)/SO4" in found["process_basis"]
 
 
 def test_iron_without_sulfate_leaves_methane_open():

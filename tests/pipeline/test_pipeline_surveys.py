@@ -121,8 +121,8 @@ def test_background_is_the_drawn_field(alluvial):
 def test_charts_share_one_window_that_holds_every_believable_sample(alluvial):
     windows = {sheet.chart.window for sheet in alluvial.charts}
     assert len(windows) == 1
-    outside = [name for sheet in alluvial.charts for name in sheet.points.loc[sheet.points["Eh_mV"] > 900, "sample"]]
-    assert set(outside) == {"EW-03-1"}
+    low, high = (1000 * value for value in windows.pop()[2:])
+    assert all(sheet.points["Eh_mV"].between(low, high).all() for sheet in alluvial.charts)
 
 
 def test_arsenic_over_iron_is_drawn_in_one_water(alluvial):
@@ -130,6 +130,23 @@ def test_arsenic_over_iron_is_drawn_in_one_water(alluvial):
     assert sheet.chart.element == "Fe"
     assert sheet.over.element == "As"
     assert sheet.chart.conditions.temperature_C == sheet.over.conditions.temperature_C
+
+
+def test_reading_that_no_water_can_have_is_set_aside_and_keeps_its_rows(alluvial):
+    own = alluvial.fields[alluvial.fields["sample"] == "EW-03-1"]
+    assert len(own) == 3
+    assert set(own["field"]) == {""}
+    assert set(own["status"]) == {"not assigned: Eh outside water's stability"}
+    assert not any((sheet.points["sample"] == "EW-03-1").any() for sheet in alluvial.charts)
+
+
+def test_check_announces_what_a_run_would_refuse(tmp_path):
+    path = tmp_path / "s.csv"
+    path.write_text("Sample;ORP (mV);pH;Easting (m);Northing (m)\nW1;1;7;565000;5934000\n", encoding="utf-8")
+    settings = Settings().replace(probe={"electrode": "SCE"})
+    _, findings = pipeline.check(read_survey(path, settings), settings)
+    (said,) = [item for item in findings if item.rule == "site.will_refuse"]
+    assert "--crs" in said.cure
 
 
 def test_check_finds_the_same_as_the_run(alluvial):

@@ -4,6 +4,7 @@ import math
 
 import pytest
 
+from gley.settings import Settings
 from gley.survey import read_survey
 from survey_files import FIELD, places, write
 
@@ -172,3 +173,19 @@ def test_file_that_holds_no_table_is_said_beside_one_that_does(tmp_path):
         item.place.file for item in read_survey([field, other]).findings if item.rule == "survey.sheet_not_understood"
     ]
     assert said == ["other.csv"]
+
+
+def test_parameter_is_mapped_by_the_settings_and_a_mapping_that_fits_nothing_is_said(tmp_path):
+    field = write(tmp_path, "field.csv", *FIELD)
+    laboratory = write(tmp_path, "lab.csv", "Sample;Parameter;Value;Unit", "W1;Rotten eggs;2;mg/L", "W2;AOX;3;mg/L")
+    columns = {"Rotten eggs": "sulfide", "AOX": "ignore", "Fooo": "Fe"}
+    survey = read_survey([field, laboratory], Settings().replace(survey={"columns": columns}))
+    assert survey.reported.loc[0, "sulfide_mg_L"] == "2"
+    assert [value for _, _, value in places(survey, "survey.mapping_unused")] == ["Fooo"]
+    assert "survey.parameter_unknown" not in survey.findings.rules()
+
+
+def test_footnote_in_the_first_column_is_no_sample(tmp_path):
+    survey = read_survey(write(tmp_path, "s.csv", *FIELD, "* provisional"))
+    assert list(survey.samples["sample"]) == ["W1", "W2"]
+    assert "survey.closing_row" in survey.findings.rules()

@@ -1,7 +1,8 @@
 """The report: one self-contained HTML page, plain and complete, that prints well."""
 
 import base64
-import re
+import dataclasses
+import platform
 from html import escape
 from importlib.resources import files
 from pathlib import Path
@@ -10,10 +11,11 @@ import numpy as np
 import pandas as pd
 
 from gley import __version__
+from gley.delivery.htmltable import chemical, number, table
 from gley.delivery.result import Result
-from gley.delivery.stamp import data_version
+from gley.delivery.stamp import data_hashes, data_version, made_at
 from gley.delivery.tables import short_table
-from gley.formula import markup
+from gley.settings import Settings
 from gley.stability import IMPLAUSIBLE_mV, beyond_water, species
 
 CAUTIONS = (
@@ -27,14 +29,8 @@ CAUTIONS = (
     "This page supports, and doesn't replace, the judgement of licensed professionals and the local codes that apply.",
 )
 
-_PLAIN_FORMULA = re.compile(r"\b(?:O2|NO3|NO2|NH4|SO4|HCO3|H2S|CH4|H2O|CO2)\b")
 _SEVERITIES = {"error": "Errors", "warning": "Warnings", "note": "Notes"}
-_HEADS = {
-    "sample": "Sample", "station": "Station", "date": "Date", "round": "Round", "temperature_C": "T (°C)",
-    "ORP_mV": "ORP (mV)", "Eh_mV": "Eh (mV)", "Eh_sd_mV": "± (mV)", "redox_category": "Redox category",
-    "redox_process": "Redox process",
-}  # fmt: skip
-_KEPT_WHOLE = ("sample", "Sample", "station", "date")
+_SHOWN_PLACES = 6
 
 
 def page(result: Result, folder: Path) -> str:
@@ -42,60 +38,31 @@ def page(result: Result, folder: Path) -> str:
     stated = result.settings.report
     title = stated.title or result.survey.facts.get("project", "") or "Redox assessment"
     css = files("gley.delivery").joinpath("page.css").read_text(encoding="utf-8")
+    cautions = "<ul>" + "".join(f"<li>{chemical(text)}</li>" for text in CAUTIONS) + "</ul>"
     body = "\n".join(
         [
             _head(result, title),
             _summary(result),
-            _section("Cautions", "<ul>" + "".join(f"<li>{chemical(text)}</li>" for text in CAUTIONS) + "</ul>"),
-            _pictures(result, folder, "charts", "E–pH charts"),
-            _pictures(result, folder, "maps", "Site maps"),
-            _section(
-                "Samples", table(short_table(result)) + "<p class=small>Eh to 10 mV, ± one standard deviation.</p>"
-            ),
+            _section("Cautions", cautions),
+            _charts(result, folder),
+            _maps(result, folder),
+            _samples(result),
+            _process(result),
             *[_element(result, element) for element in result.elements],
             _findings(result),
-            _foot(result),
+            _stamp(result),
         ]
     )
-    head = f'<meta charset="utf-8"><title>{escape(title)}</title><style>{css}</style>'
+    head = (
+        f'<meta charset="utf-8"><meta name="viewport" content="width=device-width">'
+        f"<title>{escape(title)}</title><style>{css}</style>"
+    )
     return f'<!doctype html>\n<html lang="en"><head>{head}</head>\n<body>\n{body}\n</body></html>\n'
 
 
-def table(frame: pd.DataFrame) -> str:
-    """A frame as an HTML table; formulas set properly, numbers to what they are worth."""
-    heads = "".join(f"<th>{escape(_HEADS.get(str(name), str(name)))}</th>" for name in frame)
-    rows = []
-    for record in frame.to_dict("records"):
-        cells = "".join(f"<td{_style(str(name), value)}>{_cell(value)}</td>" for name, value in record.items())
-        rows.append(f"<tr>{cells}</tr>")
-    return f'<div class="wide"><table><thead><tr>{heads}</tr></thead><tbody>{"".join(rows)}</tbody></table></div>'
-
-
-def _style(name: str, value: object) -> str:
-    if isinstance(value, (int, float)):
-        return ' class="n"'
-    return ' class="k"' if name in _KEPT_WHOLE else ""
-
-
-def _cell(value: object) -> str:
-    if isinstance(value, float):
-        text = "" if value != value else f"{value:.3g}" if abs(value) < 10 else f"{value:.0f}"
-        return text.replace("-", "−")
-    return chemical(str(value))
-
-
-def chemical(text: str) -> str:
-    """Text with the names of species set as formulas."""
-    words = [_word(word) for word in text.split(" ")]
-    return _PLAIN_FORMULA.sub(lambda found: markup(found.group(0)), " ".join(words))
-
-
-def _word(word: str) -> str:
-    """A word set as a formula when it is a dissolved form's name, with what stands behind it."""
-    name = word.rstrip(",;.:")
-    if name in species() and species()[name].dissolved:
-        return markup(species()[name].formula) + escape(word[len(name) :])
-    return markup(escape(word)) if "^" in word else escape(word)
+def map_title(layer: str) -> str:
+    """Title of a map: of the redox process or of an element's fields."""
+    return "Redox process from chemistry" if layer == "redox_process" else f"{layer}: stability field"
 
 
 def _section(title: str, inner: str) -> str:
@@ -106,12 +73,15 @@ def _head(result: Result, title: str) -> str:
     stated, facts = result.settings.report, result.survey.facts
     days = result.survey.samples["date"].dropna()
     span = "" if days.empty else f"{days.min():%Y-%m-%d} to {days.max():%Y-%m-%d}"
+    project = stated.project or facts.get("project", "")
     entries = {
-        "Project": stated.project or facts.get("project", ""),
+        "Project": "" if project == title else project,
         "Site": facts.get("site", ""),
         "Sampled": span,
+        "Sampled by": facts.get("operator", ""),
         "Prepared by": stated.prepared_by,
         "Survey files": ", ".join(str(item["path"]) for item in result.survey.inputs),
+        "Remarks": facts.get("remarks", ""),
     }
     cells = "".join(f"<dt>{name}</dt><dd>{escape(text)}</dd>" for name, text in entries.items() if text)
     return f"<header><h1>{escape(title)}</h1><dl>{cells}</dl></header>"
@@ -119,66 +89,99 @@ def _head(result: Result, title: str) -> str:
 
 def _summary(result: Result) -> str:
     eh = result.eh["Eh_mV"]
-    parts = [f"<p>{len(eh)} samples, {int(eh.notna().sum())} with Eh on the hydrogen scale"]
+    words = [f"<p>{_many(len(eh), 'sample')}, {int(eh.notna().sum())} with Eh on the hydrogen scale"]
     if eh.notna().any():
-        parts.append(f", {_span(result)}")
-    counted = result.findings.counts()
-    parts.append(
-        f". {counted['error']} errors, {counted['warning']} warnings and {counted['note']} notes on the data.</p>"
-    )
-    process = result.evidence["redox_process"].replace("", "not told").value_counts().rename_axis("Redox process")
-    blocks = [process.reset_index(name="samples")]
+        words.append(f", {_span(result)}")
+    counts = result.findings.counts()
+    counted = ", ".join(_many(counts[severity], severity) for severity in _SEVERITIES)
+    words.append(f". Findings on the data: {counted}.</p>")
+    blocks = []
+    for column, head in (("redox_category", "Redox category"), ("redox_process", "Redox process")):
+        blocks.append(result.evidence[column].value_counts().rename_axis(head).reset_index(name="samples"))
     for element in result.elements:
         own = result.fields[(result.fields["element"] == element) & (result.fields["field"] != "")]
         count = own["field"].value_counts().rename_axis(f"{element}: field")
         blocks.append(count.reset_index(name="samples"))
-    inner = "".join(parts) + '<div class="side">' + "".join(table(block) for block in blocks if len(block)) + "</div>"
+    inner = "".join(words) + '<div class="side">' + "".join(table(block) for block in blocks if len(block)) + "</div>"
     return _section("Summary", inner)
 
 
+def _many(count: int, word: str) -> str:
+    return f"{count} {word}{'' if count == 1 else 's'}"
+
+
+def _outside(result: Result) -> np.ndarray:
+    """Which samples have a potential that no water can have."""
+    pH, Eh = result.survey.samples["pH"].to_numpy(float), result.eh["Eh_mV"].to_numpy(float)
+    return np.abs(beyond_water(pH, Eh, result.eh["temperature_used_C"].to_numpy(float))) > IMPLAUSIBLE_mV
+
+
 def _span(result: Result) -> str:
-    """Range of Eh in words, potentials that no water can have left aside and counted."""
-    pH, Eh = (result.survey.samples["pH"], result.eh["Eh_mV"])
-    beyond = np.abs(
-        beyond_water(pH.to_numpy(float), Eh.to_numpy(float), result.eh["temperature_used_C"].to_numpy(float))
-    )
-    wrong = beyond > IMPLAUSIBLE_mV
-    kept = Eh[~wrong].dropna()
-    text = f"from {kept.min():.0f} to {kept.max():.0f} mV".replace("-", "−") if len(kept) else "none believable"
+    """Range of Eh in words to 10 mV, potentials that no water can have left aside and counted."""
+    wrong = _outside(result)
+    kept = result.eh["Eh_mV"][~wrong].dropna().round(-1)
+    text = f"from {number(kept.min(), '.0f')} to {number(kept.max(), '.0f')} mV" if len(kept) else "none believable"
     return text + (f" ({int(wrong.sum())} outside water's stability left aside)" if wrong.any() else "")
 
 
-def _pictures(result: Result, folder: Path, kind: str, title: str) -> str:
-    """All drawings of a folder, in the order of the charts, inside the page."""
-    found = sorted((folder / kind).glob("*.svg")) if (folder / kind).is_dir() else []
-    if not found:
-        return ""
-    order = {sheet.key: number for number, sheet in enumerate(result.charts)}
-    notes = {sheet.key: sheet.notes for sheet in result.charts} if kind == "charts" else {}
-    titles = {sheet.key: sheet.title for sheet in result.charts} if kind == "charts" else {}
+def _samples(result: Result) -> str:
+    said = "Eh to 10 mV on the hydrogen scale, ± one standard deviation. An empty cell: see the findings."
+    names = ", ".join(result.survey.samples.loc[_outside(result), "sample"].astype(str))
+    if names:
+        said += f" Outside water's stability, not to be used: {names}."
+    return _section("Samples", table(short_table(result), "samples.csv") + f"<p class=small>{escape(said)}</p>")
+
+
+def _charts(result: Result, folder: Path) -> str:
     figures = []
-    for path in sorted(found, key=lambda item: (order.get(item.stem, 99), item.stem)):
-        picture = base64.b64encode(path.read_bytes()).decode("ascii")
-        name = titles.get(path.stem, path.stem.replace("_", " "))
-        image = f'<img alt="{escape(name)}" src="data:image/svg+xml;base64,{picture}">'
-        said = "".join(f"<p>{escape(note)}</p>" for note in notes.get(path.stem, ()))
-        figures.append(f"<figure>{image}<figcaption>{escape(name)}{said}</figcaption></figure>")
-    return _section(title, "".join(figures))
+    for sheet in result.charts:
+        words = f"{sheet.title} in the E–pH plane, drawn at {sheet.reference}."
+        figures.append(_figure(folder / "charts" / f"{sheet.key}.svg", sheet.title, words))
+    return _section("E–pH charts", "".join(figures)) if any(figures) else ""
+
+
+def _maps(result: Result, folder: Path) -> str:
+    figures = []
+    for layer in ("redox_process", *result.elements):
+        words = f"{map_title(layer)}, by colour and shape."
+        figures.append(_figure(folder / "maps" / f"{layer}.svg", map_title(layer), words))
+    return _section("Site maps", "".join(figures)) if any(figures) else ""
+
+
+def _figure(path: Path, name: str, said: str) -> str:
+    """A drawing inside the page; as an image of its own, so that two drawings' ids can't meet."""
+    if not path.is_file():
+        return ""
+    picture = base64.b64encode(path.read_bytes()).decode("ascii")
+    image = f'<img alt="{escape(name)}" src="data:image/svg+xml;base64,{picture}">'
+    where = f"{path.parent.name}/{path.stem}"
+    return f"<figure>{image}<figcaption>{chemical(said)} ({escape(where)}.svg, .png)</figcaption></figure>"
+
+
+def _process(result: Result) -> str:
+    if (result.evidence["redox_category"] == "undetermined").all():
+        words = "None of O2, NO3, Mn, Fe, SO4 and sulfide was analysed closely enough to tell a process."
+        return _section("Redox process from chemistry", f"<p>{chemical(words)}</p>")
+    shown = pd.concat([result.survey.samples[["sample"]], result.evidence], axis=1)
+    shown = shown[[name for name in shown if name == "sample" or (shown[name] != "").any()]]
+    stated = (
+        "<p class=small>Thresholds of McMahon and Chapelle 2008, iron/sulfide mass ratio of Chapelle and others 2009."
+        " Fe(III)-SO4: both reductions; Fe(III)/SO4: the data can't tell which.</p>"
+    )
+    return _section("Redox process from chemistry", table(shown, "samples.csv") + stated)
 
 
 def _element(result: Result, element: str) -> str:
     own = result.fields[result.fields["element"] == element]
-    rows = [_field_row(row) for row in own.to_dict("records")]
-    return _section(f"{element}: stability fields", table(pd.DataFrame(rows)))
+    rows = pd.DataFrame([_field_row(row) for row in own.to_dict("records")])
+    return _section(f"{element}: stability fields", table(rows, "fields.csv"))
 
 
 def _field_row(row: dict) -> dict[str, str]:
     """One assignment in the words of the report: what it is, how sure, what lies beside it and how far the next is."""
 
     def with_number(name: str, value: float, form: str, unit: str = "") -> str:
-        if not row[name] or value != value:
-            return ""
-        return f"{row[name]} {format(value, form).replace('-', '−')}{unit}"
+        return f"{row[name]} {number(value, form)}{unit}" if row[name] and value == value else ""
 
     return {
         "Sample": row["sample"],
@@ -194,28 +197,71 @@ def _field_row(row: dict) -> dict[str, str]:
 
 
 def _findings(result: Result) -> str:
+    """Grouped by severity; what is said alike of several places stands once."""
     blocks = []
     for severity, title in _SEVERITIES.items():
-        rows = [
-            {"Where": str(item.place), "What": item.message, "What to do": item.cure}
-            for item in result.findings.of(severity)
-        ]
-        if rows:
-            blocks.append(f"<h3>{title} ({len(rows)})</h3>{table(pd.DataFrame(rows))}")
+        said: dict[tuple[str, str], list[str]] = {}
+        for item in result.findings.of(severity):
+            said.setdefault((item.message, item.cure), []).append(str(item.place))
+        if said:
+            rows = [{"Where": _places(where), "What": what, "What to do": cure} for (what, cure), where in said.items()]
+            count = len(result.findings.of(severity))
+            blocks.append(f"<h3>{title} ({count})</h3>{table(pd.DataFrame(rows), 'findings.csv')}")
     return _section("Findings on the data", "".join(blocks) or "<p>None.</p>")
 
 
-def _foot(result: Result) -> str:
+def _places(places: list[str]) -> str:
+    shown = "; ".join(place for place in places[:_SHOWN_PLACES] if place)
+    return f"{shown} and {len(places) - _SHOWN_PLACES} more" if len(places) > _SHOWN_PLACES else shown
+
+
+def _stamp(result: Result) -> str:
+    """Settings, data and versions: what made the numbers."""
     stated = result.settings.stability
     names = sorted(item.name for item in species().values() if item.set in _sets(stated.solids) and not item.dissolved)
-    text = (
-        f"gley {__version__}, data {data_version()}. Solids taking part ({stated.solids}): {', '.join(names)}"
+    words = (
+        f"gley {__version__}, data {data_version()}, Python {platform.python_version()}, made {made_at()}. "
+        f"Solids taking part ({stated.solids}): {', '.join(names)}"
         f"{'; added: ' + ', '.join(stated.with_names) if stated.with_names else ''}"
         f"{'; left out: ' + ', '.join(stated.without_names) if stated.without_names else ''}. "
-        "Activities by Davies; see run.json for all settings, hashes of inputs and data, and versions."
+        "Activities by Davies. run.json holds the same with the versions of all libraries."
     )
-    inputs = "".join(f"<li>{escape(item['path'])}: {item['sha256']}</li>" for item in result.survey.inputs)
-    return f"<footer><p>{escape(text)}</p><ul>{inputs}</ul></footer>"
+    sums = [{"File": str(item["path"]), "sha256": str(item["sha256"])} for item in result.survey.inputs]
+    sums += [{"File": name, "sha256": value} for name, value in data_hashes().items()]
+    command = f"<p class=small>Command: {escape(result.command)}</p>" if result.command else ""
+    chosen = f"<h3>Settings</h3>{_settings(result.settings)}"
+    hashes = f"<h3>Survey files and data tables</h3>{table(pd.DataFrame(sums), small=True)}"
+    return _section("Settings and data", f"<p>{escape(words)}</p>{command}{chosen}{hashes}")
+
+
+def _settings(settings: Settings) -> str:
+    """Every setting with its meaning; those that differ from the default are marked."""
+    rows = []
+    for group in dataclasses.fields(settings):
+        own, usual = getattr(settings, group.name), getattr(Settings(), group.name)
+        for item in dataclasses.fields(own):
+            value = getattr(own, item.name)
+            unit = item.metadata.get("unit", "")
+            rows.append(
+                {
+                    "Setting": f"{group.name}.{item.name}",
+                    "Value": f"{_shown(value)} {unit}".strip() if value not in (None, "", (), {}) else "",
+                    "Changed": "" if value == getattr(usual, item.name) else "yes",
+                    "Meaning": item.metadata.get("meaning", ""),
+                }
+            )
+    shown = pd.DataFrame(rows)
+    return table(shown if (shown["Changed"] != "").any() else shown.drop(columns="Changed"), small=True)
+
+
+def _shown(value: object) -> str:
+    if isinstance(value, dict):
+        return ", ".join(f"{name} = {_shown(part)}" for name, part in value.items())
+    if isinstance(value, tuple):
+        return ", ".join(map(str, value))
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    return number(value, "g") if isinstance(value, (int, float)) else str(value)
 
 
 def _sets(solids: str) -> tuple[str, ...]:

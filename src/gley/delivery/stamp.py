@@ -22,14 +22,17 @@ _DATA = (
     ("gley.stability", "species.csv"),
 )
 
+_READING = (("gley.data", "columns.csv"), ("gley.survey", "headers.csv"))
+"""Tables that say how a survey is read; no number comes from them."""
+
 
 def data_hashes() -> dict[str, str]:
-    """sha256 of every data table in use, by its name."""
-    return dict(_hashes())
+    """sha256 of every data table that numbers come from, by its name."""
+    return dict(_hashes(_DATA))
 
 
-def _hashes() -> Iterator[tuple[str, str]]:
-    for package, name in _DATA:
+def _hashes(tables: tuple[tuple[str, str], ...]) -> Iterator[tuple[str, str]]:
+    for package, name in tables:
         where = files("gley").joinpath(*package.split(".")[1:], name)
         yield name, hashlib.sha256(where.read_bytes()).hexdigest()
 
@@ -42,7 +45,8 @@ def data_version() -> str:
 def made_at() -> str:
     """Time of the run, UTC; SOURCE_DATE_EPOCH wins, for output that repeats to the byte."""
     epoch = os.environ.get("SOURCE_DATE_EPOCH", "")
-    moment = dt.datetime.fromtimestamp(int(epoch), dt.UTC) if epoch.isdigit() else dt.datetime.now(dt.UTC)
+    fixed = epoch.isascii() and epoch.isdigit()
+    moment = dt.datetime.fromtimestamp(int(epoch), dt.UTC) if fixed else dt.datetime.now(dt.UTC)
     return moment.strftime("%Y-%m-%dT%H:%M:%SZ")
 
 
@@ -59,7 +63,7 @@ def stamp(result: Result) -> dict[str, Any]:
         "python": platform.python_version(),
         "packages": {name: version(name) for name in _PACKAGES},
         "inputs": [dict(item) for item in result.survey.inputs],
-        "data": data_hashes(),
+        "data": {**data_hashes(), **dict(_hashes(_READING))},
         "data_version": data_version(),
         "settings": result.settings.as_dict(),
         "facts": dict(result.survey.facts),

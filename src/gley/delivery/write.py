@@ -1,21 +1,23 @@
 """Everything a run delivers, in order: tables, GIS layers, charts, maps, report, stamp."""
 
+import datetime as dt
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
-import geopandas
 import pandas as pd
-from openpyxl.styles import Font, PatternFill
-from openpyxl.utils import get_column_letter
 
-from gley.delivery.folder import build
-from gley.delivery.page import page
+from gley.delivery.folder import STAMP, build, content
+from gley.delivery.layers import write_layers
+from gley.delivery.page import map_title, page
 from gley.delivery.result import ChartSheet, Result
 from gley.delivery.sheets import as_record, draw
 from gley.delivery.stamp import data_version, made_at, stamp
-from gley.delivery.tables import boundary_table, finding_table, printed, sample_table
+from gley.delivery.tables import boundary_table, by_sample, field_table, finding_table, printed, sample_table
+from gley.delivery.workbook import MOST_ROWS, write_workbook
 from gley.drawing import EphChart, SiteMap
 from gley.errors import GleyError
+from gley.findings import Findings
 from gley.jsonform import to_json
 from gley.stability import Chart
 
@@ -42,23 +44,27 @@ def write(result: Result, folder: Path, overwrite: bool = False) -> list[Path]:
     GleyError
         When the folder mustn't or can't be written; nothing has changed then.
     """
-    return build(folder, overwrite, lambda working: _fill(result, working))
+    return build(folder, overwrite, lambda working, restored: _fill(result, working, restored, folder.name))
 
 
-def _fill(result: Result, folder: Path) -> None:
+def _fill(result: Result, folder: Path, restored: bool, name: str) -> None:
+    """All files; what concerns the writing itself is added to the findings of the copy that is written."""
+    result = replace(result, findings=Findings(result.findings))
+    if restored:
+        result.findings.add("delivery.restored", value=name)
     samples = sample_table(result)
     _csv(samples, folder / "samples.csv")
-    _csv(result.fields, folder / "fields.csv")
+    _csv(field_table(result), folder / "fields.csv")
+    _workbook(result, samples, folder / "samples.xlsx")
     _csv(finding_table(result.findings), folder / "findings.csv")
-    _workbook(result, printed(samples), folder / "samples.xlsx")
     if result.places is not None:
-        _layers(result, samples, folder / "samples.gpkg")
+        write_layers(result.places, samples, field_table(result), folder / "samples.gpkg", made_at())
     for sheet in result.charts:
         _chart(sheet, folder, result.settings.chart.dpi)
     if result.places is not None:
         _maps(result, folder / "maps")
-    (folder / "report.html").write_text(page(result, folder), encoding="utf-8")
-    _json(stamp(result), folder / "run.json")
+    (folder / "report.html").write_text(page(result, folder), encoding="utf-8", newline="\n")
+    _json({**stamp(result), "files": sorted([*content(folder), STAMP])}, folder / STAMP)
 
 
 def _csv(frame: pd.DataFrame, path: Path) -> None:
@@ -66,57 +72,16 @@ def _csv(frame: pd.DataFrame, path: Path) -> None:
 
 
 def _json(record: Any, path: Path) -> None:
-    path.write_text(to_json(record) + "\n", encoding="utf-8")
+    path.write_text(to_json(record) + "\n", encoding="utf-8", newline="\n")
 
 
 def _workbook(result: Result, samples: pd.DataFrame, path: Path) -> None:
-    """Samples, fields and findings as sheets with frozen, coloured headers; reported values stay as delivered."""
-    sheets = {"samples": samples, "fields": result.fields, "findings": finding_table(result.findings)}
-    with pd.ExcelWriter(path, engine="openpyxl") as book:
-        for name, frame in sheets.items():
-            frame.to_excel(book, sheet_name=name, index=False)
-            sheet = book.sheets[name]
-            for row in sheet.iter_rows():
-                for cell in row:
-                    if cell.data_type == "f":  # a name from the survey such as =A1 is text, not a formula
-                        cell.data_type = "s"
-            sheet.freeze_panes = "B2"
-            sheet.auto_filter.ref = sheet.dimensions
-            for c, column in enumerate(frame, start=1):
-                head = sheet.cell(1, c)
-                head.font, head.fill = Font(bold=True), PatternFill("solid", fgColor="E7D3B8")
-                longest = max([len(str(column)), *(len(str(value)) for value in frame[column].head(200))], default=8)
-                sheet.column_dimensions[get_column_letter(c)].width = min(longest + 2, 46)
-                if frame[column].dtype == float:
-                    form = _number_format(str(column))
-                    for row in range(2, len(frame) + 2):
-                        sheet.cell(row, c).number_format = form
-
-
-def _number_format(column: str) -> str:
-    if column.endswith(("_mol_L", "_eq_L")):
-        return "0.00E+00"
-    if column.endswith("_mV"):
-        return "0"
-    return "0.00####" if column.endswith("_deg") else "0.00"
-
-
-def _layers(result: Result, samples: pd.DataFrame, path: Path) -> None:
-    """GIS layers in the survey's own reference system: one point per sample, and one per sample and element."""
-    import pyogrio
-
-    # the container notes when it was changed: the same moment as the stamp
-    pyogrio.set_gdal_config_options({"OGR_CURRENT_DATE": made_at().replace("Z", ".000Z")})
-    places = result.places
-    assert places is not None
-    layer = geopandas.GeoDataFrame(samples.copy(), geometry=places.geometry.to_numpy(), crs=places.crs)
-    layer.to_file(path, layer="samples", driver="GPKG", engine="pyogrio", geometry_type="Point")
-    if not len(result.fields):
-        return
-    by_name = dict(zip(places["sample"], places.geometry, strict=True))
-    points = [by_name[name] for name in result.fields["sample"]]
-    fields = geopandas.GeoDataFrame(result.fields.copy(), geometry=points, crs=places.crs)
-    fields.to_file(path, layer="fields", driver="GPKG", engine="pyogrio", geometry_type="Point")
+    """Samples, fields and findings as sheets; what a sheet can't hold is said."""
+    shown = {"samples": printed(samples), "fields": field_table(result), "findings": finding_table(result.findings)}
+    reported = tuple(str(name) for name in result.survey.reported if not str(name).endswith("_flag"))
+    made = dt.datetime.strptime(made_at(), "%Y-%m-%dT%H:%M:%SZ")
+    for name in write_workbook(shown, reported, path, made):
+        result.findings.add("delivery.sheet_too_long", value=len(shown[name]), sheet=name, most=MOST_ROWS)
 
 
 def _chart(sheet: ChartSheet, folder: Path, dpi: int) -> None:
@@ -125,8 +90,8 @@ def _chart(sheet: ChartSheet, folder: Path, dpi: int) -> None:
         (folder / part).mkdir(exist_ok=True)
     draw(sheet).save(folder / "charts" / sheet.key, dpi=dpi)
     _json(as_record(sheet), folder / "charts" / f"{sheet.key}.json")
-    if sheet.over is None:
-        _csv(boundary_table(sheet.chart), folder / "boundaries" / f"{sheet.key}.csv")
+    lines = [boundary_table(chart) for chart in (sheet.chart, sheet.over) if chart is not None]
+    _csv(pd.concat(lines, ignore_index=True), folder / "boundaries" / f"{sheet.key}.csv")
 
 
 def _maps(result: Result, folder: Path) -> None:
@@ -134,10 +99,9 @@ def _maps(result: Result, folder: Path) -> None:
     folder.mkdir(exist_ok=True)
     places = result.places
     assert places is not None
-    layers = {"redox_process": ("Redox process from chemistry", result.evidence["redox_process"].to_numpy())}
+    layers = {"redox_process": (map_title("redox_process"), result.evidence["redox_process"].to_numpy())}
     for element in result.elements:
-        own = result.fields[result.fields["element"] == element]
-        layers[element] = (f"{element}: stability field", own["field"].to_numpy())
+        layers[element] = (map_title(element), by_sample(result, element, "field"))
     for name, (title, values) in layers.items():
         frame = places.assign(category=values, round=result.survey.samples["round"].to_numpy())
         SiteMap().draw(frame, "category", title=title).save(folder / name, dpi=result.settings.chart.dpi)

@@ -22,6 +22,9 @@ _UNDECIDED = "undetermined"
 _INPUTS = ("O2", "NO3", "Mn", "Fe", "SO4")
 _OXIC_ANOXIC, _ANOXIC_ANOXIC = "mixed (oxic-anoxic)", "mixed (anoxic)"
 _OPEN_RATIO = "Fe(III)/SO4"
+_MOST_OPEN = 4
+"""More open processes than these aren't listed."""
+
 # 1e-9: a value typed as the threshold itself must not fall to the wrong side by rounding
 _ROUNDING = 1e-9
 
@@ -44,7 +47,7 @@ def process_table(amounts: pd.DataFrame, settings: Settings) -> pd.DataFrame:
     DataFrame
         Same index, text. `redox_category`: oxic, suboxic, anoxic, mixed (oxic-anoxic), mixed (anoxic), undetermined, or
         two of them where no more is known. `redox_process`: O2, NO3, Mn(IV), Fe(III), SO4, Fe(III)-SO4 (both at once),
-        Fe(III)/SO4 (the data can't tell which), CH4, a pair such as O2-Fe(III) in mixed water, suboxic, undetermined.
+        Fe(III)/SO4 (the data can't tell which), CH4, a pair such as O2-Mn(IV) in mixed water, suboxic, undetermined.
         `process_basis`: the comparisons, and what they leave open. `process_missing`: what wasn't analysed, or has a
         limit that decides nothing.
     """
@@ -128,9 +131,9 @@ def _by_ratio(ratio: tuple[float, float] | None, stated: EvidenceSettings) -> st
 
 @lru_cache(maxsize=4096)
 def _decide(states: tuple[State, ...], by_ratio: str) -> tuple[str, str, tuple[str, ...]]:
-    """Category and process that all completions of the unknown inputs share; and the processes left open, if several."""
+    """Category and process that all completions of the unknown inputs share; the processes left open, if several."""
     choices = [(True, False) if state is None else (state,) for state in states]
-    answers = {_classify(*filled, by_ratio) for filled in product(*choices)}
+    answers = {_classify(filled, by_ratio) for filled in product(*choices)}
     categories = {category for category, _ in answers}
     processes = tuple(sorted({process for _, process in answers}))
     if len(processes) == 1:
@@ -149,19 +152,20 @@ def _category(possible: set[str]) -> str:
     return "anoxic or suboxic" if possible <= {"anoxic", _ANOXIC_ANOXIC, "suboxic"} else _UNDECIDED
 
 
-def _classify(O2: bool, NO3: bool, Mn: bool, Fe: bool, SO4: bool, by_ratio: str) -> tuple[str, str]:
+def _classify(above: tuple[bool, ...], by_ratio: str) -> tuple[str, str]:
     """Category and process when every input is known (table 1 of McMahon & Chapelle 2008).
 
-    Mixed water is named by its first process and by that which Mn, Fe and SO4 alone would tell.
+    In mixed water the table asks neither sulfate nor the ratio: iron and sulfate stay together there.
     """
-    lower = "Mn(IV)" if Mn else ""
-    if Fe:
-        lower = by_ratio if SO4 else "CH4"
+    O2, NO3, Mn, Fe, SO4 = above
+    second = _OPEN_RATIO if Fe else "Mn(IV)" if Mn else ""
     if O2:
-        return (_OXIC_ANOXIC, f"O2-{lower}") if lower else ("oxic", "O2")
+        return (_OXIC_ANOXIC, f"O2-{second}") if second else ("oxic", "O2")
     if NO3:
-        return (_ANOXIC_ANOXIC, f"NO3-{lower}") if lower else ("anoxic", "NO3")
-    return ("anoxic", lower) if lower else ("suboxic", "suboxic")
+        return (_ANOXIC_ANOXIC, f"NO3-{second}") if second else ("anoxic", "NO3")
+    if Fe:
+        return "anoxic", by_ratio if SO4 else "CH4"
+    return ("anoxic", "Mn(IV)") if Mn else ("suboxic", "suboxic")
 
 
 def _basis(states: tuple[State, ...], ratio, left_open: tuple[str, ...], stated: EvidenceSettings) -> str:
@@ -170,12 +174,14 @@ def _basis(states: tuple[State, ...], ratio, left_open: tuple[str, ...], stated:
         f"{stated.O2_mg_L:g} mg/L", f"{stated.NO3_N_mg_L:g} mg/L N", f"{stated.Mn_ug_L:g} µg/L",
         f"{stated.Fe_ug_L:g} µg/L", f"{stated.SO4_mg_L:g} mg/L",
     )  # fmt: skip
-    known = [(key, state, limit) for key, state, limit in zip(_INPUTS, states, limits, strict=True) if state is not None]
-    words = [f"{key} {'≥' if state else '<'} {limit}" for key, state, limit in known]
+    known = zip(_INPUTS, states, limits, strict=True)
+    words = [f"{key} {'≥' if state else '<'} {limit}" for key, state, limit in known if state is not None]
     if ratio is not None and states[_INPUTS.index("Fe")]:
         words.append(_ratio_text(*ratio))
     text = ", ".join(words) or "none of the inputs decides"
-    return f"{text}; leaves open {' or '.join(left_open)}" if left_open else text
+    if not left_open:
+        return text
+    return f"{text}; leaves open {' or '.join(left_open) if len(left_open) <= _MOST_OPEN else 'most'}"
 
 
 def _ratio_text(low: float, high: float) -> str:

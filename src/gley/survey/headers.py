@@ -21,7 +21,7 @@ _BESIDE_THE_POINT = re.compile(
     r"|gelöst|gel|filtriert)(?![A-Za-z])"
 )
 _FILTERED = re.compile(r"(?i)(?<![A-Za-z])(dissolved|diss|filtered|filt|gelöst|gel|filtriert)(?![A-Za-z])")
-_TOTAL = re.compile(r"(?i)(?<![A-Za-z])(total|tot|unfiltered|unfilt|recoverable|t)(?![A-Za-z])")
+_TOTAL = re.compile(r"(?i)(?<![A-Za-z])(total|tot|unfiltered|unfilt|recoverable|t|gesamt|ges|unfiltriert)(?![A-Za-z])")
 _STATE = re.compile(r"\(\s*(?:III|II|IV|VII|VI|V|I)\s*\)")
 _AS = re.compile(r"[\s_-]\(?as[\s_-]+\(?[A-Z][A-Za-z0-9]*\)?\s*$")
 _REPLICATE = re.compile(r"^(pt|orp|redox|electrode|platinum|eh)\s*(\d{1,2})$")

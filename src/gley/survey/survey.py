@@ -7,6 +7,7 @@ from pathlib import Path
 from gley.errors import GleyError, UsageError
 from gley.findings import Findings
 from gley.settings import Settings, SurveySettings
+from gley.survey import values
 from gley.survey.assemble import Record, amount_frames, frame, places_of
 from gley.survey.declared import Fact, electrodes_in_headers, facts_of_survey, give_to_rows
 from gley.survey.join import sample_rows
@@ -55,6 +56,7 @@ def read_survey(paths: str | Path | Sequence[str | Path], settings: Settings | N
     files = [Path(path) for path in ([paths] if isinstance(paths, (str, Path)) else paths)]
     delivered = _deliver(files, stated, findings)
     parts, stations, checks = _read(delivered.tables, files, stated, findings)
+    _say_unused(delivered.tables, stated, findings)
     facts = facts_of_survey(delivered.facts, findings)
     for rows in (*parts, checks):
         give_to_rows(rows, delivered.facts, facts)
@@ -75,6 +77,18 @@ def read_survey(paths: str | Path | Sequence[str | Path], settings: Settings | N
         findings=findings,
         inputs=tuple(delivered.inputs),
     )
+
+
+def _say_unused(tables: Sequence[Table], stated: SurveySettings, findings: Findings) -> None:
+    """Headers that the settings map and no file has."""
+    there = {header.text.casefold() for table in tables for _, header, _ in table.columns}
+    for table in tables:
+        if table.kind == "long":
+            at = next(c for c, header, _ in table.columns if header.target == "parameter")
+            there |= {values.words(table.grid.cell(row, at)).casefold() for row in table.rows}
+    for name in stated.columns:
+        if " ".join(name.split()).casefold() not in there:
+            findings.add("survey.mapping_unused", value=name)
 
 
 def _deliver(files: Sequence[Path], stated: SurveySettings, findings: Findings) -> _Delivered:

@@ -10,6 +10,7 @@ from gley.survey.read import Grid, is_comment
 from gley.units import Unit, recognise
 
 _SEARCHED_ROWS = 60
+_FOOTNOTE_MARKS = "*†‡¹²³"
 _MOST_BESIDE = 2  # cells beside a fact's key; a row of more is a header
 _GERMAN_SAMPLE = "probe"
 _STATISTIC = r"mean|average|avg|median|total|sum|min(?:imum)?|max(?:imum)?|std|sd|standard deviation|count|mittelwert"
@@ -210,7 +211,8 @@ def _rows(
         text = str(cells[0]).strip()
         # a lone cell that is long, or stands where no name does, is a footnote
         named = any(grid.cell(r, c) is not None for c in names)
-        alone = len(cells) == 1 and len(used) > 2 and (len(text) > 30 or not (named or _is_number(text)))
+        footnote = len(text) > 30 or text[0] in _FOOTNOTE_MARKS or not (named or _is_number(text))
+        alone = len(cells) == 1 and len(used) > 2 and footnote
         closing = _CLOSING.match(text) and kind in ("samples", "long")
         if closing or is_comment(text) or alone:
             at = next(c for c, cell in enumerate(grid.rows[r]) if cell is not None and str(cell).strip())
