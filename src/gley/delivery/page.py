@@ -72,7 +72,7 @@ def _section(title: str, inner: str) -> str:
 def _head(result: Result, title: str) -> str:
     stated, facts = result.settings.report, result.survey.facts
     days = result.survey.samples["date"].dropna()
-    span = "" if days.empty else f"{days.min():%Y-%m-%d} to {days.max():%Y-%m-%d}"
+    span = " to ".join(sorted({f"{day:%Y-%m-%d}" for day in (days.min(), days.max())})) if len(days) else ""
     project = stated.project or facts.get("project", "")
     entries = {
         "Project": "" if project == title else project,
