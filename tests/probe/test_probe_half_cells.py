@@ -1,6 +1,7 @@
 """Half-cells and check solutions against published tables, typed a second time in `tests/published/half_cells.csv`."""
 
 import csv
+from importlib.resources import files
 from itertools import pairwise
 from pathlib import Path
 
@@ -12,6 +13,7 @@ from gley.errors import UsageError
 from gley.probe import convert, electrodes, find_electrode, reference_mV, solutions
 from gley.probe.electrodes import half_cells
 from gley.probe.solutions import curves, find_solution
+from gley.settings import Settings
 
 TABLE = Path(__file__).parents[1] / "published/half_cells.csv"
 PUBLISHED = list(csv.DictReader(TABLE.read_text(encoding="utf-8").splitlines()))
@@ -54,6 +56,18 @@ def test_calomel_stands_45_mV_above_silver_chloride():
         ("SHE", "hydrogen scale (already Eh)"),
         ("already Eh", "hydrogen scale (already Eh)"),
         ("ag/agcl fill unknown", "Ag/AgCl, fill unknown"),
+        ("Ag/AgCl, fill not stated", "Ag/AgCl, fill unknown"),
+        ("AgCl sat.", "Ag/AgCl, saturated KCl"),
+        ("Ag/AgCl_sat", "Ag/AgCl, saturated KCl"),
+        # the silver salt is at saturation, KCl isn't: 8 mV apart at 25 °C
+        ("Ag/AgCl, 3 M KCl saturated with AgCl", "Ag/AgCl, 3 M KCl"),
+        ("Ag/AgCl 3 mol/L KCl, gesättigt mit AgCl", "Ag/AgCl, 3 M KCl"),
+        ("Ag/AgCl, saturated KCl (4.2 M)", "Ag/AgCl, saturated KCl"),
+        # the half-cell's own potential, not the scale of the readings
+        ("Ag/AgCl, 3 M KCl (+207 mV vs. SHE)", "Ag/AgCl, 3 M KCl"),
+        ("vs SCE", "calomel, saturated KCl"),
+        ("Hg2Cl2 sat.", "calomel, saturated KCl"),
+        ("ORP vs SHE", "hydrogen scale (already Eh)"),
     ],
 )
 def test_electrode_is_found_as_people_write_it(text, name):
@@ -73,13 +87,36 @@ def test_unknown_electrode_is_refused():
 
 
 @pytest.mark.parametrize(
+    ("text", "says"),
+    [
+        ("Ag/AgCl in 3 M NaCl", "no Ag/AgCl with this filling solution"),
+        ("calomel, saturated NaCl", "no calomel with this filling solution"),
+        ("Ag/AgCl, unsaturated", "leaves the filling solution open"),
+        ("Ag/AgCl, 3 mmol/L", "leaves the filling solution open"),
+        ("Ag/AgCl, saturated KCl, 3 M", "states two filling solutions"),
+        ("Ag/AgCl, 3 M KCl, outer 1 M KNO3", "states two filling solutions"),
+        ("Ag/AgCl 3 M, SHE corrected", "names Ag/AgCl and hydrogen scale"),
+        ("Ag/AgCI, 3 M KCl", r"Did you mean Ag/AgCl, 3 M KCl"),
+    ],
+)
+def test_electrode_that_could_mean_another_is_refused(text, says):
+    with pytest.raises(UsageError, match=says):
+        find_electrode(text)
+
+
+@pytest.mark.parametrize(
     ("text", "name"),
     [
         ("Zobell's", "ZoBell"),
         ("ZoBell solution", "ZoBell"),
         ("Light's", "Light"),
         ("quinhydrone pH 4", "quinhydrone pH 4"),
-        ("Quinhydrone, pH 7.00".replace(",", ""), "quinhydrone pH 7"),
+        ("Quinhydrone, pH 7.00", "quinhydrone pH 7"),
+        ("pH 4.01 quinhydrone (buffer)", "quinhydrone pH 4"),
+        ("quinhydrone pH 6.86", ""),  # 8 mV from pH 7
+        ("quinhydrone", ""),
+        ("Zobel", "ZoBell"),
+        ("Lightning", ""),
         ("tap water", ""),
     ],
 )
@@ -93,6 +130,23 @@ def test_worked_example():
     assert row["Eh_mV"] == pytest.approx(432.0, abs=0.5)
     assert row["pe"] == pytest.approx(432.0 / 56.18, abs=0.01)
     assert list(row) == ["orp_mV", "electrode", "temperature_C", "reference_mV", "Eh_mV", "Eh_sd_mV", "pe", "source"]
+
+
+def test_zobell_is_the_published_equation():
+    # Nordstrom 1977, Geochim. Cosmochim. Acta 41, stated for 8 to 85 °C (from memory)
+    curve = curves()["ZoBell"]
+    assert curve.T_C[0] == 8
+    t = curve.T_C - 25
+    assert curve.E_mV == pytest.approx(430.28 - 2.5157 * t - 0.0037979 * t**2, abs=0.051)
+
+
+def test_without_temperature_the_settings_one_is_taken_and_said():
+    # 217 mV at 10 °C: ISO 11271 Annex C
+    settings = Settings().replace(stability={"assumed_temperature_C": 10.0})
+    (row,) = convert([0.0], "Ag/AgCl, 3 M KCl", settings=settings)
+    assert row["reference_mV"] == pytest.approx(217, abs=0.5)
+    assert row["Eh_sd_mV"] == pytest.approx(np.hypot(60, 10))
+    assert "temperature not given, 10 °C taken" in row["source"]
 
 
 def test_outside_the_published_range_the_end_is_held_and_the_sd_grows():
@@ -114,6 +168,20 @@ def test_outside_the_published_range_the_end_is_held_and_the_sd_grows():
 def test_bad_conversions_are_refused(call, says):
     with pytest.raises(UsageError, match=says):
         convert(*call)
+
+
+@pytest.mark.parametrize("name", ["electrodes.csv", "solutions.csv"])
+def test_no_cell_of_a_table_is_cut_off(name):
+    # an unquoted comma would put the rest of a note beyond the last column
+    rows = list(csv.reader((files("gley.probe") / name).read_text(encoding="utf-8").splitlines()))
+    assert {len(row) for row in rows} == {len(rows[0])}
+
+
+def test_every_electrode_has_couple_and_fill():
+    by_name = {item["name"]: item for item in electrodes()}
+    assert by_name["calomel, saturated KCl"]["couple"] == "calomel"
+    assert by_name["Ag/AgCl, 3.5 M KCl"]["fill"] == "3.5 M KCl"
+    assert all(find_electrode(name) == name for name in by_name)
 
 
 def test_every_value_has_source_and_grade():

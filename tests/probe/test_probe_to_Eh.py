@@ -78,6 +78,17 @@ def test_unknown_electrode_is_an_error_and_the_row_stays():
     assert "electrode0" in str(fault.place)
 
 
+@pytest.mark.parametrize("declared", ["Ag/AgCl", "model 9678"])
+def test_option_serves_where_the_declared_electrode_cannot_be_used(declared):
+    made = survey([{"ORP_mV": 0.0, "temperature_C": 25.0}], facts={"electrode": declared})
+    eh, findings = convert(made, probe={"electrode": "Ag/AgCl, 3 M KCl"})
+    assert eh.loc[0, "Eh_mV"] == pytest.approx(207)
+    (said,) = [item for item in findings if item.rule == "probe.electrode_replaced"]
+    assert declared in said.message
+    assert "Ag/AgCl, 3 M KCl" in said.message
+    assert not findings.of("error")
+
+
 def test_own_offset():
     eh, _ = convert(survey([{"ORP_mV": 10.0, "temperature_C": 10.0}]), probe={"offset_mV": 200.0})
     assert eh.loc[0, "Eh_mV"] == pytest.approx(210)
@@ -172,6 +183,80 @@ def test_check_of_another_probe_or_day_does_not_count():
     assert np.isnan(eh.loc[0, "check_offset_mV"])
 
 
+def test_reading_without_a_check_is_said_where_the_survey_has_some():
+    eh, findings = convert(survey([sample(probe="P-1"), sample()], [check(219.3)], facts=FACTS))
+    assert np.isnan(eh.loc[0, "check_offset_mV"])
+    assert eh.loc[1, "check_offset_mV"] == pytest.approx(4.0, abs=0.1)
+    (said,) = [item for item in findings if item.rule == "probe.check_missing"]
+    assert said.value == "1"
+    assert "(s0)" in said.message
+
+
+def test_reading_without_a_probe_takes_no_offset_from_two_probes():
+    checks = [check(221.3, probe="P1"), check(211.3, probe="P2")]
+    eh, findings = convert(survey([sample(probe="")], checks, facts=FACTS))
+    assert eh.loc[0, "Eh_mV"] == pytest.approx(307)
+    assert "several probes" in eh.loc[0, "Eh_basis"]
+    assert "probe.check_unclear" in findings.rules()
+
+
+def test_reading_without_a_probe_takes_the_one_probe_of_the_day():
+    eh, _ = convert(survey([sample(probe="")], [check(219.3)], facts=FACTS))
+    assert eh.loc[0, "check_offset_mV"] == pytest.approx(4.0, abs=0.1)
+
+
+def test_check_serves_an_own_offset():
+    # ZoBell 430.3 mV at 25 °C (Nordstrom 1977) − 221.3 − 205 = 4 mV
+    eh, _ = convert(survey([sample()], [check(221.3)]), probe={"offset_mV": 205.0})
+    assert eh.loc[0, "check_offset_mV"] == pytest.approx(4.0, abs=0.1)
+    assert eh.loc[0, "Eh_mV"] == pytest.approx(309.0, abs=0.1)
+
+
+def test_drift_between_checks_widens_the_common_part():
+    checks = [check(223.3, "08:00"), check(213.3, "16:00")]
+    eh, _ = convert(survey([sample("12:00")], checks, facts=FACTS))
+    assert eh.loc[0, "Eh_sd_mV"] == pytest.approx(np.hypot(30, 5))
+    assert eh.loc[0, "Eh_sd_common_mV"] == pytest.approx(np.hypot(5, 5))
+
+
+def test_check_outside_the_range_of_its_solution_widens_the_sd():
+    # Light is published at 25 °C only: 10 °C off at 1 mV/°C
+    eh, findings = convert(survey([sample()], [check(461, solution="Light", T=15.0)], facts=FACTS))
+    assert eh.loc[0, "Eh_sd_mV"] == pytest.approx(np.hypot(30, 10))
+    assert "probe.check_outside" in findings.rules()
+    # ZoBell rises by 2.4 mV/°C at 8 °C, the end of its range (Nordstrom 1977): 2 °C off
+    eh, _ = convert(survey([sample()], [check(250, T=6.0)], facts=FACTS))
+    assert eh.loc[0, "Eh_sd_mV"] == pytest.approx(np.hypot(30, 4.8), abs=0.05)
+
+
+def test_sample_outside_the_range_of_its_electrode_widens_the_sd_and_is_said():
+    eh, findings = convert(survey([{"ORP_mV": 0.0, "temperature_C": 4.0}], facts={"electrode": "SCE"}))
+    assert eh.loc[0, "Eh_mV"] == pytest.approx(254, abs=0.5)  # held at 10 °C: ISO 11271 Annex C
+    assert eh.loc[0, "Eh_sd_mV"] == pytest.approx(np.hypot(60, 6))
+    assert findings.rules() == ["probe.outside_range"]
+
+
+def test_limit_of_iron_does_not_make_a_water_poised():
+    amounts = {"Fe_mol_L": [1e-4, 1e-4], "Fe_limit": ["<", ""]}
+    eh, _ = convert(survey([sample(), sample()], [check(223.3)], facts=FACTS, amounts=amounts))
+    assert list(eh["Eh_sd_mV"]) == pytest.approx([30, 15])
+
+
+def test_failed_check_never_names_an_unknown_fill():
+    # declared 1 M (236 mV), reads as 203 mV: between 3 M and saturated
+    _, findings = convert(survey([sample()], [check(227.3)], facts={"electrode": "Ag/AgCl, 1 M KCl"}))
+    said = next(item for item in findings if item.rule == "probe.check_failed")
+    assert "fill unknown" not in said.message
+    assert "Ag/AgCl, 3 M KCl" in said.message
+    assert "Ag/AgCl, saturated KCl" in said.message
+
+
+def test_failed_check_of_a_meter_that_already_shows_eh():
+    # ZoBell 430 mV at 25 °C on the hydrogen scale
+    _, findings = convert(survey([sample()], [check(430)], facts=FACTS))
+    assert "already Eh" in next(item for item in findings if item.rule == "probe.check_failed").message
+
+
 def test_standard_deviation_unchecked_checked_poised():
     # 60, 30, 15 mV: the settings' defaults
     plain, _ = convert(survey([sample()], facts=FACTS))
@@ -201,6 +286,15 @@ def test_missing_temperature_is_the_median_of_the_round_else_assumed():
     assert eh.loc[3, "temperature_basis"] == "assumed 25 °C"
     assert findings.rules().count("probe.no_temperature") == 2
     assert eh.loc[2, "Eh_sd_mV"] > eh.loc[0, "Eh_sd_mV"]
+
+
+def test_missing_temperature_keeps_to_the_unit_of_its_station():
+    rows = [{"ORP_mV": 0.0, "round": "1", "station": name, "temperature_C": t} for name, t in
+            (("A", 9.0), ("A", 9.4), ("B", 14.0), ("B", None))]  # fmt: skip
+    stations = [{"station": "A", "aquifer": "upper"}, {"station": "B", "aquifer": "lower"}]
+    eh, _ = convert(survey(rows, stations=stations, facts=FACTS))
+    assert eh.loc[3, "temperature_used_C"] == 14.0
+    assert eh.loc[3, "temperature_basis"] == "median of the round and unit"
 
 
 def test_columns_are_those_of_the_vocabulary():

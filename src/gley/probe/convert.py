@@ -7,7 +7,8 @@ import numpy as np
 
 from gley.constants import pe_from_Eh
 from gley.errors import UsageError
-from gley.probe.electrodes import FILL_UNKNOWN, find_electrode, half_cells
+from gley.probe.electrodes import find_electrode, half_cells
+from gley.probe.naming import FILL_UNKNOWN
 from gley.settings import Settings
 
 
@@ -23,9 +24,10 @@ def convert(
     electrode : str
         Reference electrode with its filling solution.
     temperature_C : float, optional
-        Temperature in °C; without it 25 °C is taken, said in `source` and added to the standard deviation.
+        Temperature in °C; without it the assumed one of the settings (25 °C) is taken, said in `source` and added to
+        the standard deviation.
     settings : Settings, optional
-        Standard deviations.
+        Standard deviations and the assumed temperature.
 
     Returns
     -------
@@ -37,12 +39,13 @@ def convert(
     UsageError
         For an electrode that is missing or unknown, a temperature outside −5 … 100 °C, a reading beyond ±2000 mV.
     """
-    stated = (settings or Settings()).probe
+    settings = settings or Settings()
+    stated, assumed = settings.probe, settings.stability.assumed_temperature_C
     if not electrode:
         message = "No reference electrode named."
         raise UsageError(message, f"Give --electrode, one of: {'; '.join(half_cells())}.")
     cell = half_cells()[find_electrode(electrode)]
-    t = 25.0 if temperature_C is None else float(temperature_C)
+    t = assumed if temperature_C is None else float(temperature_C)
     if not -5.0 <= t <= 100.0:
         message = f"Temperature {t:g} °C: −5 to 100 °C is wanted."
         raise UsageError(message, "Give the temperature of the sample in °C.")
@@ -55,7 +58,7 @@ def convert(
     parts += [stated.sd_fill_unknown_mV] if cell.name == FILL_UNKNOWN else []
     parts += [stated.sd_no_temperature_mV] if temperature_C is None else []
     source = "; ".join(cell.sources)
-    source += "; temperature not given, 25 °C taken" if temperature_C is None else ""
+    source += f"; temperature not given, {t:g} °C taken" if temperature_C is None else ""
     if beyond:
         source += f"; {t:g} °C is outside the published {cell.T_C[0]:g} to {cell.T_C[-1]:g} °C, end value held"
     return [

@@ -8,7 +8,8 @@ from gley.constants import pe_from_Eh
 from gley.errors import UsageError
 from gley.findings import Findings
 from gley.probe.checks import Correction, corrections, read_checks
-from gley.probe.electrodes import FILL_UNKNOWN, HYDROGEN, OWN_OFFSET, find_electrode, half_cells
+from gley.probe.electrodes import OWN_OFFSET, Curve, find_electrode, half_cells
+from gley.probe.naming import FILL_UNKNOWN, HYDROGEN
 from gley.settings import ProbeSettings, Settings
 from gley.survey import of_station
 
@@ -54,8 +55,11 @@ def to_Eh(survey, settings: Settings, findings: Findings) -> pd.DataFrame:
     reading = ~np.isnan(orp) & (names != "")
     reference, beyond = _references(names, table["temperature_used_C"].to_numpy(float), stated)
     _say_outside(names, beyond, reading, samples, findings)
-    correction = corrections(samples, read_checks(survey, _finder(survey, names, stated), stated, findings), stated)
+    checks = read_checks(survey, _finder(survey, names, stated), stated, findings)
+    correction = corrections(samples, checks, stated)
     _say_refused(correction, reading, orp + reference, samples, findings)
+    if checks:
+        _say_unserved(correction, reading, samples, findings)
     delivered = ~reading & ~np.isnan(given)
     Eh = np.where(reading, orp + reference + correction.delta_mV, np.where(delivered, given, np.nan))
     _say_delivered(Eh, given, reading, survey, findings)
@@ -119,9 +123,9 @@ def _electrodes(survey, stated: ProbeSettings, findings: Findings) -> np.ndarray
             name = find_electrode(text)
         except UsageError as error:
             where = survey.origin.place(samples.index[np.flatnonzero(rows)[0]], "electrode")
-            findings.add(
-                "probe.unknown_electrode", where, text, count=int(rows.sum()), reason=error.message, cure=error.cure
-            )
+            rule = "probe.electrode_replaced" if chosen else "probe.unknown_electrode"
+            said = {"reason": error.message, "cure": error.cure, "chosen": chosen}
+            findings.add(rule, where, text, count=int(rows.sum()), **said)
             continue
         if chosen and chosen != name:
             findings.add("probe.electrode_differs", value=chosen, declared=name, count=int(rows.sum()))
@@ -146,20 +150,27 @@ def _references(names: np.ndarray, temperature: np.ndarray, stated: ProbeSetting
 
 
 def _finder(survey, names: np.ndarray, stated: ProbeSettings):
-    """(probe, electrode as written) → electrode of a check: its own, else that of the samples read with the probe."""
+    """(probe, electrode as written) → half-cell of a check: its own, else that of the samples read with the probe."""
     probes = survey.samples["probe"].str.casefold().to_numpy()
 
-    def find(probe: str, written: str) -> str:
+    def find(probe: str, written: str) -> Curve | None:
         if written:
             try:
-                return find_electrode(written)
+                return half_cells()[find_electrode(written)]
             except UsageError:
-                return ""
+                return None
         own = names[(probes == probe.casefold()) & (names != "")] if probe else names[names != ""]
         found = list(dict.fromkeys(own)) or list(dict.fromkeys(names[names != ""]))
-        return found[0] if len(found) == 1 and found[0] != OWN_OFFSET else ""
+        if len(found) != 1:
+            return None
+        return _own_offset(stated) if found[0] == OWN_OFFSET else half_cells()[found[0]]
 
     return find
+
+
+def _own_offset(stated: ProbeSettings) -> Curve:
+    """The half-cell the settings state, the same at every temperature."""
+    return Curve(OWN_OFFSET, np.array([25.0]), np.array([stated.offset_mV]), ("settings",), "stated", "", "")
 
 
 def _spread(table, survey, names, beyond, correction: Correction, reading, stated: ProbeSettings) -> None:
@@ -197,6 +208,8 @@ def _basis(table, correction: Correction, reading, delivered) -> np.ndarray:
                 text += f" {correction.delta_mV[i]:+.0f} mV from check solution"
             elif not np.isnan(correction.refused_mV[i]):
                 text += f"; check off by {correction.refused_mV[i]:+.0f} mV, not applied"
+            elif correction.unclear[i]:
+                text += "; checks of several probes, none applied"
             else:
                 text += "; no check"
             words.append(text)
@@ -215,9 +228,8 @@ def _say_outside(names, beyond, reading, samples, findings: Findings) -> None:
     for name in dict.fromkeys(names[reading & (beyond > 0)]):
         rows = np.flatnonzero(reading & (beyond > 0) & (names == name))
         cell = half_cells()[name]
-        shown = ", ".join(samples["sample"].iloc[rows[:6]]) + (" …" if len(rows) > 6 else "")
         span = f"{cell.T_C[0]:g} to {cell.T_C[-1]:g}"
-        findings.add("probe.outside_range", value=name, range=span, count=len(rows), samples=shown)
+        findings.add("probe.outside_range", value=name, range=span, count=len(rows), samples=_shown(samples, rows))
 
 
 def _say_refused(correction: Correction, reading, plain, samples, findings: Findings) -> None:
@@ -230,6 +242,19 @@ def _say_refused(correction: Correction, reading, plain, samples, findings: Find
             without=f"{plain[i]:.0f}",
             corrected=f"{plain[i] + correction.refused_mV[i]:.0f}",
         )
+
+
+def _say_unserved(correction: Correction, reading, samples, findings: Findings) -> None:
+    """Readings that no check serves though the survey has some: a probe's name or a day that doesn't match."""
+    alone = ~correction.checked & np.isnan(correction.refused_mV) & ~correction.unclear
+    for rule, rows in (("probe.check_missing", alone), ("probe.check_unclear", correction.unclear)):
+        found = np.flatnonzero(reading & rows)
+        if len(found):
+            findings.add(rule, value=len(found), samples=_shown(samples, found))
+
+
+def _shown(samples, rows: np.ndarray) -> str:
+    return ", ".join(samples["sample"].iloc[rows[:6]]) + (" …" if len(rows) > 6 else "")
 
 
 def _say_delivered(Eh, given, reading, survey, findings: Findings) -> None:

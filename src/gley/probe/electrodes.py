@@ -2,7 +2,9 @@
 
 import csv
 import re
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from difflib import get_close_matches
 from functools import cache
 from importlib.resources import files
 from types import MappingProxyType
@@ -11,9 +13,9 @@ from typing import Any
 import numpy as np
 
 from gley.errors import UsageError
+from gley.probe import naming
+from gley.probe.naming import FILL_UNKNOWN, HYDROGEN
 
-FILL_UNKNOWN = "Ag/AgCl, fill unknown"
-HYDROGEN = "hydrogen scale (already Eh)"
 OWN_OFFSET = "own offset"
 
 _UNKNOWN_MEMBERS = ("Ag/AgCl, 3 M KCl", "Ag/AgCl, 3.5 M KCl", "Ag/AgCl, 4 M KCl", "Ag/AgCl, saturated KCl")
@@ -73,8 +75,16 @@ def half_cells() -> MappingProxyType:
 
 
 def electrodes() -> list[dict[str, Any]]:
-    """The table as plain values: name, potential at 25 °C [mV], published range [°C], source, seen, grade, note."""
-    return [{**described(item), "E_25C_mV": float(item.at(np.array([25.0]))[0][0])} for item in half_cells().values()]
+    """The table as plain values, one record an electrode.
+
+    `name`, `couple`, `fill`, potential at 25 °C [mV], published range [°C], `source`, `seen`, `grade`, `note`.
+    """
+    found = []
+    for item in half_cells().values():
+        couple, _, fill = item.name.partition(", ")
+        at_25 = float(item.at(np.array([25.0]))[0][0])
+        found.append({**described(item), "couple": couple, "fill": fill, "E_25C_mV": at_25})
+    return found
 
 
 def described(item: Curve) -> dict[str, Any]:
@@ -109,61 +119,47 @@ def find_electrode(text: str) -> str:
     Raises
     ------
     UsageError
-        For an unknown electrode, an unknown strength, or a missing filling solution; names the choices.
+        For an unknown electrode, an unknown strength, a missing filling solution, or a text that names two; names
+        the choices, near names first.
     """
-    plain = " ".join(str(text).replace(",", ", ").split())
-    for name in half_cells():
-        if name.lower().replace(" ", "") == plain.lower().replace(" ", ""):
-            return name
-    couple = _couple(plain.lower())
-    if couple == HYDROGEN:
-        return HYDROGEN
-    if not couple:
+    wanted, known = _squeezed(text), {_squeezed(name): name for name in half_cells()}
+    if wanted in known:
+        return known[wanted]
+    named = naming.couples(str(text))
+    if not named:
+        near = [known[key] for key in get_close_matches(wanted, known, 2, 0.6)]
         message = f"'{text}' isn't a reference electrode in the table."
-        raise UsageError(message, f"Choose from: {_choices()}.")
-    fill = _fill(str(text).lower(), couple)
+        raise UsageError(message, _choose(half_cells(), near))
+    if len(named) > 1:
+        message = f"'{text}' names {' and '.join(named)}."
+        cure = f"Write one: the electrode if the readings are raw, '{HYDROGEN}' if they have been converted."
+        raise UsageError(message, cure)
+    return named[0] if named[0] == HYDROGEN else _filled(str(text), named[0])
+
+
+def _filled(text: str, couple: str) -> str:
+    """The table's name for a couple with the filling solution a text states."""
     own = [name for name in half_cells() if name.startswith(couple)]
-    if not fill and len(own) == 1:
-        return own[0]
-    for name in own:
-        if fill and name.split(", ")[1].startswith(fill):
-            return name
-    shown = "; ".join(own)
+    try:
+        fill = naming.fill(text, couple)
+    except ValueError:
+        message = f"'{text}' states two filling solutions."
+        raise UsageError(message, _choose(own)) from None
     if not fill:
         message = f"'{text}' leaves the filling solution open."
-        raise UsageError(message, f"Choose from: {shown}.")
-    message = f"'{text}': there is no {couple} with this filling solution in the table."
-    raise UsageError(message, f"Choose from: {shown}; or give offset_mV under [probe] in the settings.")
+        raise UsageError(message, _choose(own))
+    name = f"{couple}, {fill}"
+    if name not in own:
+        message = f"'{text}': there is no {couple} with this filling solution in the table."
+        raise UsageError(message, _choose(own).rstrip(".") + "; or give offset_mV under [probe] in the settings.")
+    return name
 
 
-def _choices() -> str:
-    return "; ".join(half_cells())
+def _squeezed(text: str) -> str:
+    return re.sub(r"[\s,]", "", str(text).lower())
 
 
-def _couple(plain: str) -> str:
-    """Which couple a text names; '' when none."""
-    tight = re.sub(r"[\s_\-]", "", plain)
-    if re.search(r"hg2so4|mercurous?sul|mercurysul|\bmse\b", tight):
-        return "Hg/Hg2SO4"
-    if re.search(r"cu/?cuso4|coppersul|\bcse\b", tight):
-        return "Cu/CuSO4"
-    if re.search(r"calomel|kalomel|hg2?/?hg2?cl2?|\bsce\b", tight):
-        return "calomel"
-    if re.search(r"ag/?agcl|silver/?silver|silverchloride|silber|^agcl", tight):
-        return "Ag/AgCl"
-    if re.search(r"\bshe\b|\bnhe\b|hydrogen|alreadyeh|^eh$|standardhydrogen", tight):
-        return HYDROGEN
-    return ""
-
-
-def _fill(plain: str, couple: str) -> str:
-    """The filling solution as the table's names begin with it: `3.5 M`, `saturated`, `fill unknown`; '' when none."""
-    if re.search(r"unknown|unbekannt|not known|\?", plain):
-        return "fill unknown"
-    if re.search(r"\bsat|gesät|gesaet|saturat|\bsce\b", plain):
-        return "saturated"
-    strength = re.search(r"(\d+(?:[.,]\d+)?)\s*-?\s*(?:m\b|mol|n\b|molar)", plain)
-    if not strength:
-        return "saturated" if couple in ("Cu/CuSO4", "Hg/Hg2SO4") else ""
-    number = float(strength.group(1).replace(",", "."))
-    return "3.33 M" if abs(number - 10 / 3) < 0.04 else f"{number:g} M"
+def _choose(names: Iterable[str], meant: Sequence[str] = ()) -> str:
+    """The cure that lists the choices, after the near names."""
+    asked = f"Did you mean {' or '.join(meant)}? " if meant else ""
+    return f"{asked}Choose from: {'; '.join(names)}."

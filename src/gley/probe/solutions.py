@@ -7,6 +7,8 @@ from typing import Any
 
 from gley.probe.electrodes import described, read_curves
 
+_SAME_BUFFER_pH = 0.015  # 4.01 and 7.01 are the same buffers; 0.01 is 0.6 mV
+
 
 @cache
 def curves() -> MappingProxyType:
@@ -20,11 +22,16 @@ def solutions() -> list[dict[str, Any]]:
 
 
 def find_solution(text: str) -> str:
-    """The table's name for a check solution as people write it; '' when it isn't one we know."""
-    plain = re.sub(r"[\s'’_-]", "", str(text)).lower()
-    if "zobell" in plain:
+    """The table's name for a check solution as people write it; '' when it isn't one we know.
+
+    A quinhydrone buffer must state its pH, 4 or 7 to 0.01: others (6.86, 4.65) show another potential.
+    """
+    plain = re.sub(r"[\s'’_()-]", "", str(text)).lower()
+    if re.search("zobell?", plain):
         return "ZoBell"
-    if plain.startswith("light"):
+    if re.match(r"light(?:s|solution|ssolution|standard|$)", plain):
         return "Light"
-    buffer = re.search(r"(?:quinh|chinh).*?ph(4|7)(?:[.,]0\d?)?$", plain)
-    return f"quinhydrone pH {buffer.group(1)}" if buffer else ""
+    stated = re.search(r"ph(\d+(?:[.,]\d+)?)", plain) if re.search("quinh|chinh", plain) else None
+    pH = float(stated.group(1).replace(",", ".")) if stated else 0.0
+    near = [whole for whole in (4, 7) if abs(pH - whole) < _SAME_BUFFER_pH]
+    return f"quinhydrone pH {near[0]}" if near else ""
