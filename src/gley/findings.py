@@ -16,6 +16,12 @@ from typing import Any
 SEVERITIES = ("note", "warning", "error")
 
 
+def some(names: Iterable[Any], most: int = 6) -> str:
+    """The first of several names, with dots where there are more."""
+    found = [str(name) for name in names]
+    return ", ".join(found[:most]) + (" …" if len(found) > most else "")
+
+
 @dataclass(frozen=True)
 class Place:
     """Where a value stands: file, sheet and cell of the input, or the sample it concerns. Empty parts are unknown."""

@@ -12,11 +12,9 @@ from gley.charts import chart_sheets, with_background
 from gley.columns import amount_column, columns
 from gley.delivery import Result
 from gley.errors import UsageError
-from gley.findings import Findings, Place
+from gley.findings import Findings, Place, some
 from gley.settings import Settings
 from gley.survey import Survey, read_survey
-
-_SHOWN_NAMES = 6
 
 
 def run(
@@ -96,9 +94,14 @@ def engine_table(survey: Survey, eh: pd.DataFrame) -> pd.DataFrame:
     return table
 
 
+def _beyond_water(waters: pd.DataFrame) -> np.ndarray:
+    """How far in mV each potential lies outside water's stability (n,)."""
+    return stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
+
+
 def water_line_findings(waters: pd.DataFrame, survey: Survey, findings: Findings) -> None:
     """Say which potentials no water at rest can have."""
-    beyond = stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
+    beyond = _beyond_water(waters)
     for row in map(int, np.flatnonzero(np.abs(beyond) > stability.IMPLAUSIBLE_mV)):
         sample = waters.iloc[row]
         column = "ORP_mV" if pd.notna(sample["ORP_mV"]) else "Eh_given_mV"
@@ -113,7 +116,7 @@ def water_line_findings(waters: pd.DataFrame, survey: Survey, findings: Findings
 def set_aside(fields: pd.DataFrame, waters: pd.DataFrame) -> pd.DataFrame:
     """Fields without those of samples whose potential no water can have: they keep their rows, with the reason."""
     table = fields.copy()
-    beyond = stability.beyond_water(*(waters[name].to_numpy(float) for name in ("pH", "Eh_mV", "temperature_used_C")))
+    beyond = _beyond_water(waters)
     wrong = table["sample"].isin(waters.loc[np.abs(beyond) > stability.IMPLAUSIBLE_mV, "sample"])
     for name, column in columns("fields").items():
         if name != "status":
@@ -146,9 +149,8 @@ def _status_findings(fields: pd.DataFrame, findings: Findings) -> None:
             if phrase == "ok":
                 continue
             names = list(group["sample"])
-            shown = ", ".join(names[:_SHOWN_NAMES]) + (" …" if len(names) > _SHOWN_NAMES else "")
             rule = "stability.not_assigned" if str(phrase).startswith("not assigned") else "stability.status"
-            findings.add(rule, value=phrase, element=element, count=len(names), total=len(part), names=shown)
+            findings.add(rule, value=phrase, element=element, count=len(names), total=len(part), names=some(names))
 
 
 class _Clock:

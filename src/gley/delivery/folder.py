@@ -8,6 +8,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 from gley.errors import GleyError
+from gley.findings import some
 
 STAMP = "run.json"
 """The file that marks a folder as one of ours; its list `files` says which files in it are."""
@@ -84,8 +85,7 @@ def _refuse_files(folder: Path, real: Path, overwrite: bool) -> None:
         raise GleyError(message, "Name another folder with --out, or give --overwrite to replace it.")
     strange = _strange(real)
     if strange:
-        shown = ", ".join(strange[:_SHOWN_FILES]) + (" …" if len(strange) > _SHOWN_FILES else "")
-        message = f"{folder} holds files that no run wrote ({shown}); nothing was changed."
+        message = f"{folder} holds files that no run wrote ({some(strange, _SHOWN_FILES)}); nothing was changed."
         raise GleyError(message, "Move them elsewhere (close programs that have a layer open), or name another folder.")
 
 

@@ -6,7 +6,7 @@ import pandas as pd
 from gley.columns import columns
 from gley.constants import pe_from_Eh
 from gley.errors import UsageError
-from gley.findings import Findings
+from gley.findings import Findings, some
 from gley.probe.checks import Correction, corrections, read_checks
 from gley.probe.electrodes import OWN_OFFSET, Curve, find_electrode, half_cells
 from gley.probe.naming import FILL_UNKNOWN, HYDROGEN
@@ -254,7 +254,7 @@ def _say_unserved(correction: Correction, reading, samples, findings: Findings) 
 
 
 def _shown(samples, rows: np.ndarray) -> str:
-    return ", ".join(samples["sample"].iloc[rows[:6]]) + (" …" if len(rows) > 6 else "")
+    return some(samples["sample"].iloc[rows])
 
 
 def _say_delivered(Eh, given, reading, survey, findings: Findings) -> None:

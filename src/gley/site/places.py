@@ -7,13 +7,12 @@ from pyproj import CRS
 from pyproj.exceptions import CRSError
 
 from gley.errors import UsageError
-from gley.findings import Findings, Place
+from gley.findings import Findings, Place, some
 from gley.settings import Settings
 from gley.survey import of_station
 
 NONE = "none"
 _DEGREES = "EPSG:4326"
-_SHOWN_NAMES = 6
 _PAIRS = (("x_m", "y_m"), ("longitude_deg", "latitude_deg"))
 _AREA_MARGIN_DEG = 2.0
 """How far beyond its area of use a system may be stretched, as at the edge of a zone."""
@@ -154,8 +153,7 @@ def _points(table: pd.DataFrame, crs: CRS, findings: Findings) -> geopandas.GeoS
 
 
 def _names(frame: geopandas.GeoDataFrame, where: np.ndarray) -> str:
-    names = list(frame.loc[where, "sample"].astype(str))
-    return ", ".join(names[:_SHOWN_NAMES]) + (" …" if len(names) > _SHOWN_NAMES else "")
+    return some(frame.loc[where, "sample"])
 
 
 def _one(frame: geopandas.GeoDataFrame, where: np.ndarray) -> Place:
