@@ -16,7 +16,11 @@ from gley.stability import Chart, Conditions
 FAN = (10, 90)
 """Percentiles of the detected totals between which a fan shows how far lines move."""
 
-NAMES = {"As": "Arsenic", "Fe": "Iron", "Mn": "Manganese", "S": "Sulfur"}
+NAMES = {
+    "Fe": "Iron", "Mn": "Manganese", "As": "Arsenic", "U": "Uranium", "Cr": "Chromium", "Se": "Selenium",
+    "Cu": "Copper", "Pb": "Lead", "Zn": "Zinc", "Cd": "Cadmium", "Ni": "Nickel", "Co": "Cobalt", "V": "Vanadium", "Mo": "Molybdenum",
+    "Sb": "Antimony", "Hg": "Mercury", "Ag": "Silver", "S": "Sulfur",
+}  # fmt: skip
 
 _FAN_LEAST = 5
 

@@ -331,7 +331,7 @@ def test_waters_lines_stand_at_the_charts_temperature():
     [
         ({"element": "Fx"}, "no chart of 'Fx'.*Fe"), ({"total_mol_L": 0.0}, "total 0 mol/L"),
         ({"total_mol_L": float("nan")}, "total nan"), ({"temperature_C": -3.0}, "temperature -3 °C"),
-        ({"ligands": {"Q": 1e-3}}, "ligand 'Q'.*C, S"), ({"ligands": {"C": -1e-3}}, "ligand C = -0.001"),
+        ({"ligands": {"Q": 1e-3}}, "ligand 'Q'.*C, Cl.*S, S"), ({"ligands": {"C": -1e-3}}, "ligand C = -0.001"),
         ({"ligands": {"S": 1e-3, "S(VI)": 1e-3}}, "tied by Eh"), ({"ligands": {"Fe": 1e-3}}, "own element"),
         ({"solids": "new"}, "solid set 'new'"), ({"window": (8.0, 4.0, -1.0, 1.0)}, "pH 8 to 4"),
         ({"window": (4.0, 8.0, 1.0, -1.0)}, "E 1 to -1 V"), ({"with_names": ("kryptonite",)}, "kryptonite"),

@@ -42,7 +42,8 @@ RC = {
 _ENDS = {
     "Fe": ("II", "III"), "Mn": ("II", "IV"), "As": ("III", "V"), "S": ("-II", "VI"), "N": ("-III", "V"),
     "C": ("-IV", "IV"), "U": ("IV", "VI"), "Cr": ("III", "VI"), "Se": ("-II", "VI"), "Cu": ("I", "II"),
-    "V": ("III", "V"),
+    "V": ("III", "V"), "Pb": ("0", "IV"), "Zn": ("0", "IV"), "Cd": ("0", "IV"), "Ni": ("0", "IV"), "Co": ("I", "III"),
+    "Mo": ("IV", "VI"), "Sb": ("III", "V"), "Hg": ("0", "II"), "Ag": ("0", "I"),
 }  # fmt: skip
 """The oxidation states that read as reduced and oxidised in natural water; others lie between or just beyond."""
 
@@ -110,8 +111,7 @@ def field_state(name: str) -> tuple[str, str, str] | None:
     item = species().get(name)
     if item is None or not item.element:
         return None
-    kind = "dissolved" if item.phase == "dissolved" else "solid"
-    return item.element, f"{item.element}({item.oxidation_state})", kind
+    return item.element, f"{item.element}({item.oxidation_state})", item.kind
 
 
 def field_colour(name: str) -> str | None:

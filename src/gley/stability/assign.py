@@ -10,7 +10,7 @@ from gley.constants import nernst_slope_mV
 from gley.errors import UsageError
 from gley.settings import Settings
 from gley.stability import certainty, march, margins
-from gley.stability.data import CHART_ONLY, OFFERED, check_names
+from gley.stability.data import CHART_ONLY, COMPANION, OFFERED, check_names
 from gley.stability.solve import Choice, Solved, solve
 from gley.stability.systems import System, away_from_25
 from gley.stability.water import DIC_MIN_PH, IMPLAUSIBLE_mV, beyond_water
@@ -18,6 +18,9 @@ from gley.stability.waters import LIGAND_INPUTS, MAX_IONIC_STRENGTH_M, Waters, w
 
 BLOCK = 8192
 """Samples solved at a time: keeps the working arrays in the processor's cache and memory bounded."""
+
+ALWAYS = ("Fe", "Mn", "As")
+"""Elements assigned wherever they were measured, non-detects too: they carry the redox story of a site."""
 
 LIMIT_FRACTION = 0.01
 """A non-detect is tried at its limit and at this fraction of it."""
@@ -33,7 +36,7 @@ def assign(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | 
         `<constituent>_mol_L` [mol/L], `alkalinity_eq_L` [eq/L], `<constituent>_limit` (`<` = upper bound), and for
         probabilities `Eh_sd_mV` [mV], `pH_sd`. Columns that are missing count as not measured.
     elements : sequence of str
-        Symbols among those offered (Fe, Mn, As, S).
+        Symbols among those offered: `stability.OFFERED`.
     settings : Settings, optional
         Solid set, names added or left out, assumed totals, thresholds.
 
@@ -120,8 +123,8 @@ def _statuses(element: str, target: System, ready: Waters) -> list[list[str]]:
     for value in np.unique(ready.temperature_C[ready.temperature_assumed]):
         say(ready.temperature_assumed & (ready.temperature_C == value), f"temperature assumed: {value:g} °C")
     for channel in target.channels:
-        if channel == "Fe":
-            say(np.isnan(ready.totals["Fe"]), "companion not measured: Fe")
+        if channel == COMPANION:
+            say(np.isnan(ready.totals[COMPANION]), f"companion not measured: {COMPANION}")
             continue
         say(ready.assumed[channel], f"ligand assumed: {channel}")
         if channel == "S(-II)":
@@ -165,7 +168,7 @@ def _fill(table, status, rows, element, target, ready, spread, tied, choice, set
     _put(table, rows, {
         "field": named(solved.field),
         "formula": fact(lambda item: item.formula),
-        "kind": fact(lambda item: "dissolved" if item.dissolved else "solid"),
+        "kind": fact(lambda item: item.kind),
         "oxidation_state": fact(lambda item: f"{element}({item.oxidation_state})"),
         "dissolved_form": named(solved.form), "share": solved.share,
         "saturation": _saturation(target, solved, stated), "solid": named(solved.solid), "SI": solved.SI,
@@ -227,7 +230,7 @@ def _outcomes(part: pd.DataFrame, bounded: dict[str, np.ndarray], stated) -> lis
 def _limits(table, status, rows, element, target, ready: Waters, tied, choice, solved: Solved) -> None:
     """Say where the answer hangs on a value that is only an upper bound; a limit never proves a solid."""
     used = [channel for channel in target.channels if channel in ready.limited]
-    used += [element] + (["Fe"] if "Fe" in target.channels else [])
+    used += [element] + ([COMPANION] if COMPANION in target.channels else [])
     touched = np.zeros(len(rows), bool)
     for name in used:
         touched |= ready.limited[name][rows]
@@ -249,10 +252,15 @@ def _limits(table, status, rows, element, target, ready: Waters, tied, choice, s
 
 
 def measured_elements(samples: pd.DataFrame) -> tuple[str, ...]:
-    """Offered elements with at least one detected value in a table of samples, in the order Fe, Mn, As."""
+    """Elements to assign when none is named: Fe, Mn and As where measured, others where detected; sulfur isn't one."""
     found = []
-    for key in ("Fe", "Mn", "As"):
-        column = constituents()[key].column
-        if column in samples and samples[column].notna().any():
+    for key in OFFERED:
+        column = constituents()[key].column if key in constituents() else ""
+        if column not in samples:
+            continue
+        told = samples[column].notna()
+        if key not in ALWAYS and f"{key}_limit" in samples:
+            told &= samples[f"{key}_limit"] != "<"
+        if told.any():
             found.append(key)
     return tuple(found)

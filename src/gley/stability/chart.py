@@ -9,7 +9,7 @@ import shapely
 from gley.constants import nernst_slope_mV
 from gley.errors import UsageError
 from gley.stability.chart_types import Chart, Conditions, Field
-from gley.stability.data import CHART_ONLY, OFFERED, SETS, check_names
+from gley.stability.data import CHART_ONLY, COMPANION, FIXED, OFFERED, SETS, SULFUR, check_names
 from gley.stability.edges import SNAP, Setting, boundaries
 from gley.stability.solve import Bath, Choice
 from gley.stability.strips import Piece, Plane, cut, pieces
@@ -23,9 +23,9 @@ SMALLEST = 1e-6
 """Parts, holes and lines below this share of the window are rounding, not chemistry."""
 
 LIGANDS = {
-    "C": "C(IV)", "S": "S", "S(VI)": "S(VI)", "S(-II)": "S(-II)",
-    "Cl": "Cl(-I)", "P": "P(V)", "Si": "Si(IV)", "Fe": "Fe",
-}  # fmt: skip
+    **{short: channel for channel, (short, _) in FIXED.items()},
+    **{name: name for name in ("S", *SULFUR, COMPANION)},
+}
 """What `ligands` may name: `S` is tied by Eh, `S(VI)` and `S(-II)` stand side by side as measured."""
 
 TEMPERATURES_C = (0.0, 100.0)
@@ -47,7 +47,8 @@ def chart(
     temperature_C, ionic_strength_M : float
         Conditions [°C, mol/L].
     ligands : mapping of str to float, optional
-        Totals [mol/L] of `C`, `S` (tied by Eh) or `S(VI)` and `S(-II)` (as measured), `Cl`, `P`, `Fe`; absent = none.
+        Totals [mol/L] of `C`, `S` (tied by Eh) or `S(VI)` and `S(-II)` (as measured), `Cl`, `P`, `Si`, `F`, `Ca`, `Mg`,
+        `K`, `Fe`; absent = none.
     solids : str
         Solid set `fresh`, `aged` or `none`.
     with_names, without_names : sequence of str
@@ -129,7 +130,7 @@ def _ligand_faults(element: str, ligands: Mapping[str, float]) -> list[str]:
         for name, total in ligands.items()
         if not 0 < total <= 10
     ]
-    measured = {"S(VI)", "S(-II)"} & ligands.keys()
+    measured = SULFUR.keys() & ligands.keys()
     if "S" in ligands and measured:
         problems.append("ligand S is tied by Eh, S(VI) and S(-II) stand as measured: one or the other is wanted")
     if element in ligands or (element == "S" and measured):
@@ -139,12 +140,12 @@ def _ligand_faults(element: str, ligands: Mapping[str, float]) -> list[str]:
 
 def _bath(ligands: Mapping[str, float], temperature_C: float, ionic_strength_M: float):
     """Waters of the chart's composition at any pH."""
-    tied = not {"S(VI)", "S(-II)"} & ligands.keys()
+    tied = not SULFUR.keys() & ligands.keys()
 
     def at(pH: np.ndarray) -> Bath:
         X = features(pH, temperature_C, ionic_strength_M)
-        totals = {LIGANDS[name]: np.full(len(pH), total) for name, total in ligands.items() if name != "Fe"}
-        companions = {"Fe": np.full(len(pH), ligands["Fe"])} if "Fe" in ligands else {}
+        totals = {LIGANDS[name]: np.full(len(pH), total) for name, total in ligands.items() if name != COMPANION}
+        companions = {COMPANION: np.full(len(pH), ligands[COMPANION])} if COMPANION in ligands else {}
         return Bath(X, totals, companions, tied)
 
     return at
@@ -168,9 +169,8 @@ def _fields(made: list[Piece], target: System, volt: float, smallest: float) -> 
         polygons = [_rings(part, smallest) for part in shapely.get_parts(joined) if part.area > smallest]
         if polygons:
             item = target.members[member]
-            kind = "dissolved" if item.dissolved else "solid"
             state = f"{item.element}({item.oxidation_state})"
-            found.append(Field(item.name, item.formula, kind, state, tuple(polygons)))
+            found.append(Field(item.name, item.formula, item.kind, state, tuple(polygons)))
     return tuple(found)
 
 

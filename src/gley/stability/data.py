@@ -21,11 +21,26 @@ from gley.constants import LN10, R_J_MOL_K, T0_K
 from gley.errors import UsageError
 from gley.formula import parse
 
-OFFERED = ("Fe", "Mn", "As", "S")
-"""Elements whose samples are assigned to fields."""
+OFFERED = ("Fe", "Mn", "As", "U", "Cr", "Se", "Cu", "Pb", "Zn", "Cd", "Ni", "Co", "V", "Mo", "Sb", "Hg", "Ag", "S")
+"""Elements whose samples are assigned to fields: each one's chart was compared with a published one, three positions or
+more in `tests/stability/test_stability_positions.py`.
+"""
 
 CHART_ONLY = ("N", "C")
 """Elements drawn as charts only: platinum doesn't sense their couples, so no sample is assigned by Eh."""
+
+FIXED = {
+    "C(IV)": ("C", "alkalinity"), "Cl(-I)": ("Cl", "Cl"), "P(V)": ("P", "PO4"), "Si(IV)": ("Si", "Si"),
+    "F(-I)": ("F", "F"), "Ca(II)": ("Ca", "Ca"), "Mg(II)": ("Mg", "Mg"), "K(I)": ("K", "K"),
+}  # fmt: skip
+"""Ligand channels that keep their oxidation state whatever the Eh: what a chart calls each, and the analysis that tells
+it. A channel is an element in one oxidation state."""
+
+SULFUR = {"S(VI)": "SO4", "S(-II)": "sulfide"}
+"""Sulfur's two channels and the analyses that tell them: as measured side by side, or tied by Eh."""
+
+COMPANION = "Fe"
+"""The metal that solids of As, Cr and Se may share; its own competition is solved first."""
 
 SETS = {"none": (), "fresh": ("fresh",), "aged": ("fresh", "aged")}
 """Which solids each named set lets in; `named` solids come in by name only."""
@@ -74,6 +89,11 @@ class Species:
     def dissolved(self) -> bool:
         """Whether it is a dissolved form (else a solid, liquid or gas)."""
         return self.phase == "dissolved"
+
+    @property
+    def kind(self) -> str:
+        """`dissolved`, or `solid` for any phase of its own (liquid mercury too)."""
+        return "dissolved" if self.dissolved else "solid"
 
     @property
     def only_at_25(self) -> bool:

@@ -9,8 +9,8 @@ import shapely
 
 from gley.constants import nernst_slope_mV
 from gley.stability.chart_types import Boundary
-from gley.stability.data import Species, species
-from gley.stability.environment import SULFUR, Environment
+from gley.stability.data import COMPANION, SULFUR, Species, species
+from gley.stability.environment import Environment
 from gley.stability.reactions import Reaction, between, shown
 from gley.stability.strips import Piece, Plane
 from gley.stability.water import features, pool, pool_terms
@@ -52,20 +52,20 @@ class Setting:
         X = self.plane.bath_at(middle).X
         table = []
         for environment in self.plane.environments(middle):
-            state, _, candidate = environment.state.partition("Fe")
+            state, _, candidate = environment.state.partition(COMPANION)
             columns = {}
             for channel in self.plane.target.channels:
-                if channel == "Fe" and candidate:
+                if channel == COMPANION and candidate:
                     columns[channel] = self._companion(X, environment, int(candidate))
-                elif channel != "Fe":
+                elif channel != COMPANION:
                     tied = state.strip() if channel in SULFUR else ""
                     columns[channel] = largest(tied or channel, X)
             table.append([{channel: column[s] for channel, column in columns.items()} for s in range(len(middle))])
         return table
 
     def _companion(self, X: np.ndarray, environment: Environment, candidate: int) -> list[Species]:
-        iron = self.plane.choice.system("Fe")
-        lines = iron.lines(X, np.full(len(X), self.log_ligands["Fe"]), environment)
+        iron = self.plane.choice.system(COMPANION)
+        lines = iron.lines(X, np.full(len(X), self.log_ligands[COMPANION]), environment)
         return [iron.members[k] for k in lines.forms(np.full(len(X), candidate))]
 
 

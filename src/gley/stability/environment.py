@@ -5,18 +5,13 @@ sulfate and sulfide side by side, or is tied by Eh: then each interval of pe has
 solids keep their full dependence, and dissolved complexes with another state are left out there.
 """
 
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 
 import numpy as np
 
-from gley.stability.data import species
+from gley.stability.data import FIXED, SULFUR, species
 from gley.stability.water import coefficients, log_sum, pool, pool_terms
-
-FIXED = ("C(IV)", "Cl(-I)", "P(V)", "Si(IV)")
-"""Channels that keep their oxidation state whatever the Eh."""
-
-SULFUR = ("S(VI)", "S(-II)")
 
 
 @dataclass(frozen=True)
@@ -49,7 +44,9 @@ def pool_line(channel: str, X: np.ndarray, total: np.ndarray) -> tuple[np.ndarra
     return np.where(np.isfinite(level), level, np.nan), float(pool(channel)[0].e)
 
 
-def environments(X: np.ndarray, totals: Mapping[str, np.ndarray], tied: bool, sulfur_solid: bool) -> list[Environment]:
+def environments(
+    X: np.ndarray, totals: Mapping[str, np.ndarray], needed: Collection[str], tied: bool, sulfur_solid: bool
+) -> list[Environment]:
     """Environments of n samples in order of rising pe.
 
     Parameters
@@ -58,6 +55,8 @@ def environments(X: np.ndarray, totals: Mapping[str, np.ndarray], tied: bool, su
         Features.
     totals : mapping of channel to ndarray (n,)
         Totals in mol/L; NaN or 0 = not there. With `tied`, the channel `S` holds total sulfur.
+    needed : collection of str
+        Channels that somebody asks for; the others aren't worked out.
     tied : bool
         Sulfur tied by Eh instead of taken as measured.
     sulfur_solid : bool
@@ -65,11 +64,11 @@ def environments(X: np.ndarray, totals: Mapping[str, np.ndarray], tied: bool, su
     """
     alpha, beta = {}, {}
     for channel in (*FIXED, *(() if tied else SULFUR)):
-        if channel in totals:
+        if channel in totals and channel in needed:
             alpha[channel], beta[channel] = pool_line(channel, X, totals[channel])
     n = len(X)
     always = (np.full(n, -np.inf), np.full(n, np.inf))
-    if not tied or "S" not in totals:
+    if not tied or "S" not in totals or not SULFUR.keys() & needed:
         return [Environment("", alpha, beta, *always)]
     states = [(channel, *pool_line(channel, X, totals["S"])) for channel in SULFUR]
     if sulfur_solid:

@@ -9,7 +9,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from gley.stability.environment import SULFUR, Environment
+from gley.stability.data import COMPANION, SULFUR
+from gley.stability.environment import Environment
 from gley.stability.solve import Bath, Choice, fields, locate
 from gley.stability.systems import Lines, System
 from gley.stability.water import pool
@@ -155,10 +156,10 @@ def _rates(target: System, here: Environment, choice: Choice) -> Rates:
 
 def _ligand_rate(channel: str, here: Environment, choice: Choice) -> tuple[float, float]:
     """Least and greatest change per pH of a ligand element's log activity: the proton numbers of its forms."""
-    state = here.state.partition("Fe")[0].strip()
-    if channel == "Fe":
+    state = here.state.partition(COMPANION)[0].strip()
+    if channel == COMPANION:
         # all of iron's candidates: one may give way to another within the step, its activity goes on without a jump
-        iron = _rates(choice.system("Fe"), here, choice)
+        iron = _rates(choice.system(COMPANION), here, choice)
         return float(iron.line_low.min()), float(iron.line_high.max())
     if channel in SULFUR and state:
         channel = state

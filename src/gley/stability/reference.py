@@ -7,10 +7,11 @@ import pandas as pd
 
 from gley.settings import Settings
 from gley.stability.chart_types import Conditions
+from gley.stability.data import COMPANION, FIXED, SULFUR
 from gley.stability.solve import Choice
 from gley.stability.waters import Waters, waters
 
-_NAMES = {"C(IV)": "C", "Cl(-I)": "Cl", "P(V)": "P", "Si(IV)": "Si", "S(VI)": "S(VI)", "S(-II)": "S(-II)"}
+_NAMES = {**{channel: short for channel, (short, _) in FIXED.items()}, **{channel: channel for channel in SULFUR}}
 
 
 def reference(
@@ -72,9 +73,9 @@ def _distance(ready: Waters, element: str, channels: tuple[str, ...], rows: np.n
 def _ligands(ready: Waters, channels: tuple[str, ...], row: int) -> Mapping[str, float]:
     """Ligand totals of one sample under the names a chart takes; unknown and absent ones are left out."""
     found = {_NAMES[c]: float(ready.ligands[c][row]) for c in channels if c in ready.ligands}
-    if "Fe" in channels:
-        found["Fe"] = float(ready.totals["Fe"][row])
-    if ready.tied[row] and {"S(VI)", "S(-II)"} & found.keys():
-        parts = [found.pop(name, np.nan) for name in ("S(VI)", "S(-II)")]
+    if COMPANION in channels:
+        found[COMPANION] = float(ready.totals[COMPANION][row])
+    if ready.tied[row] and SULFUR.keys() & found.keys():
+        parts = [found.pop(name, np.nan) for name in SULFUR]
         found["S"] = float(np.nansum(parts))
     return {name: total for name, total in found.items() if np.isfinite(total) and total > 0}

@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from gley.stability.data import COMPANION
 from gley.stability.environment import Environment, environments, with_companion
 from gley.stability.systems import Lines, System, log_sum, system
 
@@ -57,19 +58,20 @@ class Bath:
         """Ligand environments that a system's species need, companions (Fe before As) included; with `every` also
         those that no sample is in, so that the list is the same at any pH.
         """
-        found = environments(self.X, self.ligands, self.tied, choice.sulfur_solid)
-        if "Fe" not in target.channels:
+        iron = choice.system(COMPANION) if COMPANION in target.channels else None
+        needed = {*target.channels, *(iron.channels if iron else ())}
+        found = environments(self.X, self.ligands, needed, self.tied, choice.sulfur_solid)
+        if iron is None:
             return found
-        iron = choice.system("Fe")
         with np.errstate(divide="ignore", invalid="ignore"):
-            log_total = np.log10(self.companions.get("Fe", np.full(len(self.X), np.nan)))
+            log_total = np.log10(self.companions.get(COMPANION, np.full(len(self.X), np.nan)))
         known = np.isfinite(log_total)
         if not known.any():
             return found
         split = []
         for environment in found:
             lines = iron.lines(self.X, np.where(known, log_total, -np.inf), environment)
-            split += with_companion(environment, "Fe", lines.alpha, lines.beta, every)
+            split += with_companion(environment, COMPANION, lines.alpha, lines.beta, every)
         return split
 
 

@@ -13,9 +13,10 @@ from gley.columns import amount_column
 from gley.constants import nernst_slope_mV
 from gley.settings import StabilitySettings
 from gley.stability import water
+from gley.stability.data import COMPANION, FIXED, SULFUR
 from gley.stability.solve import Bath
 
-LIGAND_INPUTS = {"C(IV)": "alkalinity", "S(VI)": "SO4", "S(-II)": "sulfide", "Cl(-I)": "Cl"}
+LIGAND_INPUTS = {channel: analysis for channel, (_, analysis) in FIXED.items()} | SULFUR
 """The analysis that tells each ligand channel."""
 
 MAX_IONIC_STRENGTH_M = 0.5
@@ -49,7 +50,7 @@ class Waters:
         if tied:
             # an unmeasured sulfide adds nothing to the total that Eh then splits
             ligands["S"] = ligands.pop("S(VI)") + np.nan_to_num(ligands.pop("S(-II)"))
-        return Bath(X, ligands, {"Fe": self._scaled(self.totals, "Fe", rows, scale)}, tied)
+        return Bath(X, ligands, {COMPANION: self._scaled(self.totals, COMPANION, rows, scale)}, tied)
 
     def log_total(self, element: str, rows: np.ndarray, scale: float = 1.0) -> np.ndarray:
         """log10 of an element's total; −inf for zero, NaN for unknown."""
@@ -83,7 +84,7 @@ def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySe
     strength, basis = water.ionic_strength(frame, settings.charge_balance_percent, settings.default_ionic_strength_M)
     X = water.features(np.nan_to_num(pH, nan=7.0), temperature, strength)
     totals, ligands, limited, assumed = {}, {}, {}, {}
-    for element in (*elements, *(() if "Fe" in elements else ("Fe",))):
+    for element in (*elements, *(() if COMPANION in elements else (COMPANION,))):
         key = "SO4" if element == "S" else element
         totals[element], limited[element], assumed[element] = _total(frame, key, settings)
     for channel, key in LIGAND_INPUTS.items():

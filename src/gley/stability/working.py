@@ -8,8 +8,9 @@ import pandas as pd
 from gley.constants import nernst_slope_mV
 from gley.settings import Settings
 from gley.stability import margins
+from gley.stability.data import COMPANION, SULFUR
 from gley.stability.edges import largest
-from gley.stability.environment import SULFUR, Environment
+from gley.stability.environment import Environment
 from gley.stability.reactions import between
 from gley.stability.solve import Choice, locate, solve
 from gley.stability.systems import Lines, System
@@ -74,7 +75,7 @@ def _ligands(target: System, ready: Waters, here: Environment, pe: float) -> lis
     """Totals of the ligand elements and the activity their pools give them."""
     found = []
     for channel in target.channels:
-        if channel not in here.alpha or channel == "Fe":
+        if channel not in here.alpha or channel == COMPANION:
             continue
         level = float(here.alpha[channel][0] + here.beta[channel] * pe)
         total = float(ready.ligands[channel][0])
@@ -124,8 +125,8 @@ def _line(target, ready: Waters, here: Environment, log_total, field: int, follo
     slope = float(nernst_slope_mV(t))
     forms = {}
     for channel in target.channels:
-        if channel != "Fe":
-            tied = here.state.split(" Fe")[0].strip() if channel in SULFUR else ""
+        if channel != COMPANION:
+            tied = here.state.split(f" {COMPANION}")[0].strip() if channel in SULFUR else ""
             forms[channel] = largest(tied or channel, ready.X)[0]
     with np.errstate(divide="ignore"):
         totals = {channel: float(np.log10(ready.ligands[channel][0])) for channel in forms if channel in ready.ligands}
