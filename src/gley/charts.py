@@ -9,18 +9,13 @@ import shapely
 from gley import stability
 from gley.columns import amount_column
 from gley.delivery import ChartSheet
+from gley.drawing import element_name
 from gley.findings import Findings
 from gley.settings import ChartSettings, Settings
 from gley.stability import Chart, Conditions
 
 FAN = (10, 90)
 """Percentiles of the detected totals between which a fan shows how far lines move."""
-
-NAMES = {
-    "Fe": "Iron", "Mn": "Manganese", "As": "Arsenic", "U": "Uranium", "Cr": "Chromium", "Se": "Selenium",
-    "Cu": "Copper", "Pb": "Lead", "Zn": "Zinc", "Cd": "Cadmium", "Ni": "Nickel", "Co": "Cobalt", "V": "Vanadium", "Mo": "Molybdenum",
-    "Sb": "Antimony", "Hg": "Mercury", "Ag": "Silver", "S": "Sulfur",
-}  # fmt: skip
 
 _FAN_LEAST = 5
 
@@ -87,7 +82,7 @@ def _sheet(element, waters, points, found: tuple[int, Conditions], window, setti
     column = waters.get(amount_column(element), pd.Series(np.nan, index=waters.index))
     totals = column[np.isin(waters["sample"], points["sample"])].to_numpy(float)
     return ChartSheet(
-        key=element, title=NAMES.get(element, element), chart=chart, over=None,
+        key=element, title=element_name(element), chart=chart, over=None,
         fan=_fan(element, conditions, totals, window, settings.chart), points=points,
         reference=f"sample {waters['sample'].iloc[row]}", notes=_notes(points, settings.chart.background_mismatch),
     )  # fmt: skip

@@ -78,7 +78,7 @@ def test_amounts_carry_a_fitting_prefix_and_the_mass():
 def test_formulas_have_their_charge_raised_and_counts_lowered():
     assert typeset("HAsO4^2-") == r"$\mathregular{HAsO_{4}^{2{−}}}$"
     assert typeset("Fe(OH)3") == r"$\mathregular{Fe(OH)_{3}}$"
-    assert style.shown_name("FeSO4(aq)", "FeSO4", "dissolved") == ("", r"$\mathregular{FeSO_{4}}$")
+    assert style.shown_name("FeSO4(aq)", "FeSO4", "dissolved") == ("", r"$\mathregular{FeSO_{4}}$(aq)")
 
 
 def test_symbols_are_unlike_each_other_and_those_not_assigned_hollow():

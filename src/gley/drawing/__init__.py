@@ -2,6 +2,6 @@
 
 from gley.drawing.chart import EphChart
 from gley.drawing.map import SiteMap
-from gley.drawing.style import field_colour
+from gley.drawing.style import element_name, field_colour
 
-__all__ = ["EphChart", "SiteMap", "field_colour"]
+__all__ = ["EphChart", "SiteMap", "element_name", "field_colour"]

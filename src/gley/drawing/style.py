@@ -130,8 +130,12 @@ def key_of_tints(states: set[tuple[str, str, str]]) -> list[tuple[str, str]]:
 
 
 def shown_name(name: str, formula: str, kind: str) -> tuple[str, str]:
-    """Name and formula as set in a drawing: a solid has both, a dissolved form only its formula (name empty)."""
-    return ("", typeset(formula)) if kind == "dissolved" else (name, typeset(formula))
+    """Name and formula as set in a drawing: a solid has both, a dissolved form only its formula (name empty), an
+    uncharged one with its phase, so that it isn't taken for the solid of the same formula.
+    """
+    if kind != "dissolved":
+        return name, typeset(formula)
+    return "", typeset(formula) + ("" if "^" in formula else "(aq)")
 
 
 def species_text(name: str) -> str:

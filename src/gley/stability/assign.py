@@ -11,6 +11,7 @@ from gley.errors import UsageError
 from gley.settings import Settings
 from gley.stability import certainty, march, margins
 from gley.stability.data import CHART_ONLY, COMPANION, OFFERED, check_names
+from gley.stability.draws import Spread
 from gley.stability.solve import Choice, Solved, solve
 from gley.stability.systems import System, away_from_25
 from gley.stability.water import DIC_MIN_PH, IMPLAUSIBLE_mV, beyond_water
@@ -60,7 +61,7 @@ def assign(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | 
     check_names(stated.with_names, stated.without_names)
     choice = Choice(stated.solids, tuple(stated.with_names), tuple(stated.without_names))
     ready = waters(samples, tuple(elements), stated)
-    spread = certainty.Spread.of(samples, stated)
+    spread = Spread.of(samples, stated)
     if not elements:
         return pd.DataFrame(columns=["sample", "element", *columns("fields")])
     tables = [_element_table(element, ready, spread, choice, settings) for element in elements]
@@ -164,7 +165,7 @@ def _fill(table, status, rows, element, target, ready, spread, tied, choice, set
 
     margin_pe, next_E = margins.along_pe(target, bath, pe, log_total, solved.field, choice)
     margin_pH, next_pH = march.along_pH(target, bath, pe, log_total, solved.field, choice)
-    odds = certainty.probabilities(target, bath, pe, log_total, spread.take(rows), choice, stated)
+    odds = certainty.probabilities(target, bath, pe, log_total, solved.field, spread.take(rows), choice, stated)
     _put(table, rows, {
         "field": named(solved.field),
         "formula": fact(lambda item: item.formula),

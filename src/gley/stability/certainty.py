@@ -1,55 +1,21 @@
 """Probability of a field, given the model: quasi-random points over Eh, pH, total and the solids' log K.
 
-The same points serve every element and sample. Eh and pH vary per sample; a solid's log K is drawn once per point, for
-all samples alike, because it is one constant of nature that we know badly. Ligands are solved again at each point.
-Systematic choices (which solids form, sulfur tied or not) are no noise and are not drawn here.
+Ligands are solved again where a point can change their state. Systematic choices (which solids form, sulfur tied or
+not, an offset that all readings of a day share) are no noise and are not drawn here: see the scenarios.
 """
 
 from dataclasses import dataclass, replace
-from functools import lru_cache
-from statistics import NormalDist
 
 import numpy as np
-import pandas as pd
 
-from gley.constants import LN10, nernst_slope_mV
 from gley.settings import StabilitySettings
-from gley.stability.solve import Bath, Choice, fields
+from gley.stability.draws import Points, Spread
+from gley.stability.solve import Bath, Choice, fields, locate
+from gley.stability.sweep import offsets, shares, sweep
 from gley.stability.systems import System
 
-SOLID_LOG_K_SD = {"A": 0.2, "B": 0.4, "C": 0.8}
-"""Standard deviation of a solid's log K per formula unit by grade of its row: grades are defined as reviewed and
-cross-checked, single good source or ± 2-5 kJ, weak; a judgement of this project."""
-
-_PRIMES = (2, 3, 5, 7, 11, 13, 17, 19, 23, 29, 31, 37, 41, 43, 47, 53, 59, 61, 67, 71, 73, 79)
-_MAX_ROWS = 65536
-
-
-@dataclass(frozen=True)
-class Spread:
-    """Standard deviations per sample (n,): Eh in pe units, pH, log10 of a total."""
-
-    pe: np.ndarray
-    pH: np.ndarray
-    log_total: np.ndarray
-
-    @classmethod
-    def of(cls, samples: pd.DataFrame, stated: StabilitySettings) -> "Spread":
-        """From the columns `Eh_sd_mV`, `pH_sd` or `pH_where`, `temperature_C`; defaults of the settings elsewhere."""
-        n = len(samples)
-        temperature = samples.get("temperature_C", pd.Series(np.full(n, np.nan))).to_numpy(float)
-        slope = nernst_slope_mV(np.where(np.isnan(temperature), 25.0, temperature))
-        Eh_sd = samples.get("Eh_sd_mV", pd.Series(np.full(n, np.nan))).to_numpy(float)
-        where = samples.get("pH_where", pd.Series([""] * n)).fillna("").astype(str).to_numpy()
-        pH_sd = np.where(where == "laboratory", stated.pH_sd_laboratory, stated.pH_sd_field)
-        given = samples.get("pH_sd", pd.Series(np.full(n, np.nan))).to_numpy(float)
-        pH_sd = np.where(np.isnan(given), pH_sd, given)
-        total = np.full(n, stated.total_sd_percent / 100.0 / LN10)
-        return cls(np.where(np.isnan(Eh_sd), 60.0, Eh_sd) / slope, pH_sd, total)
-
-    def take(self, rows: np.ndarray) -> "Spread":
-        """The same for some of the samples."""
-        return Spread(self.pe[rows], self.pH[rows], self.log_total[rows])
+_CHUNK = 512
+"""Samples whose points are held at a time: keeps the tables of samples × points in the processor's cache."""
 
 
 @dataclass(frozen=True)
@@ -71,49 +37,52 @@ class Odds:
         return np.where(rest.max(axis=1) > 0, best, -1)
 
 
-@lru_cache(maxsize=8)
-def normal_points(count: int, dimensions: int) -> np.ndarray:
-    """Quasi-random standard normal points (count, dimensions): Halton sequence through the normal quantile function.
-
-    Halton 1960; a deterministic sequence, so that two runs agree to the last bit. Each column has mean 0 by symmetry:
-    the second half mirrors the first.
-    """
-    half = (count + 1) // 2
-    columns = [[_radical_inverse(i, _PRIMES[d]) for i in range(1, half + 1)] for d in range(dimensions)]
-    quantile = NormalDist().inv_cdf
-    points = np.array([[quantile(value) for value in column] for column in columns]).T
-    return np.vstack([points, -points])[:count]
-
-
-def _radical_inverse(index: int, base: int) -> float:
-    value, factor = 0.0, 1.0 / base
-    while index:
-        index, digit = divmod(index, base)
-        value += digit * factor
-        factor /= base
-    return value
-
-
 def probabilities(
-    target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, spread: Spread, choice: Choice,
-    stated: StabilitySettings,
+    target: System, bath: Bath, pe: np.ndarray, log_total: np.ndarray, field: np.ndarray, spread: Spread,
+    choice: Choice, stated: StabilitySettings,
 ) -> Odds:  # fmt: skip
-    """Probability of each member as the field of each sample.
+    """Probability of each member as the field of each sample; `field` (n,) is the one at the measured values.
 
-    Solids' log K are drawn for the element's own solids. Points are taken one block at a time, so memory stays bounded.
+    Solids' log K are drawn for the element's own solids. A sample none of whose gaps can close anywhere in the box that
+    holds all points has its field for certain. Where gaps can close but no ligand changes its state, cubics in pH
+    through five looks serve all points; elsewhere each point is solved anew.
     """
-    solids = [i for i, item in enumerate(target.members) if not item.dissolved]
-    points = normal_points(stated.draws, min(3 + len(solids), len(_PRIMES)))
-    n, S = len(pe), len(target.members)
-    counts = np.zeros((n, S))
-    for point in points:
-        moved = replace(bath, X=bath.X.copy())
-        moved.X[:, 3] = np.clip(bath.X[:, 3] + point[1] * spread.pH, 0.0, 14.0)
+    points = Points.of(target, stated.draws)
+    share = np.zeros((len(pe), len(target.members)))
+    moved = [bath.at_pH(bath.X[:, 3] + offset * spread.pH) for offset in offsets(points)]
+    found = [item.environments(target, choice, every=True, rates=True) for item in moved]
+    where = locate(bath.environments(target, choice, every=True), pe)
+    anew = []
+    for e in np.unique(where):
+        rows = np.flatnonzero(where == e)
+        looks = [(item.X[rows], states[e].take(rows)) for item, states in zip(moved, found, strict=True)]
+        own = spread.take(rows)
+        swept = sweep(target, looks, pe[rows], log_total[rows], field[rows], own, points)
+        clear = ~swept.rivals_close.any(axis=1) & ~swept.fence_closes
+        share[rows[clear], field[rows[clear]]] = 1.0
+        anew.append(rows[swept.fence_closes])
+        open_ = np.flatnonzero(~clear & ~swept.fence_closes)
+        for start in range(0, len(open_), _CHUNK):
+            some = open_[start : start + _CHUNK]
+            at = rows[some]
+            share[at] = shares(swept, some, pe[at], field[at], spread.take(at), points)
+    rows = np.concatenate(anew)
+    if len(rows):
+        share[rows] = _solved_anew(
+            target, bath.take(rows), pe[rows], log_total[rows], spread.take(rows), choice, points
+        )
+    return Odds(share)
+
+
+def _solved_anew(target: System, bath: Bath, pe, log_total, spread: Spread, choice: Choice, points: Points):
+    """Share of the points (n, S) at which each member is the field, ligands solved again at every point."""
+    n = len(pe)
+    counts = np.zeros((n, len(target.members)))
+    for z_pe, z_pH, z_total, log_K in zip(points.pe, points.pH, points.log_total, points.log_K, strict=True):
+        moved = bath.at_pH(bath.X[:, 3] + z_pH * spread.pH)
         matrix = target.matrix.copy()
-        for k, i in enumerate(solids):
-            if 3 + k < len(point):
-                matrix[0, i] += point[3 + k] * SOLID_LOG_K_SD[target.members[i].grade]
+        matrix[0] += log_K
         shifted = replace(target, matrix=matrix)
-        field = fields(shifted, moved, pe + point[0] * spread.pe, log_total + point[2] * spread.log_total, choice)
+        field = fields(shifted, moved, pe + z_pe * spread.pe, log_total + z_total * spread.log_total, choice)
         counts[np.arange(n), field] += 1
-    return Odds(counts / len(points))
+    return counts / len(points.pe)

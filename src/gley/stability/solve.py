@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from gley.stability.data import COMPANION
-from gley.stability.environment import Environment, environments, with_companion
+from gley.stability.environment import Environment, PoolLine, environments, with_companion
 from gley.stability.systems import Lines, System, log_sum, system
 
 
@@ -54,13 +54,15 @@ class Bath:
         X[:, 3] = pH
         return replace(self, X=X)
 
-    def environments(self, target: System, choice: Choice, every: bool = False) -> list[Environment]:
+    def environments(
+        self, target: System, choice: Choice, every: bool = False, rates: bool = False
+    ) -> list[Environment]:
         """Ligand environments that a system's species need, companions (Fe before As) included; with `every` also
-        those that no sample is in, so that the list is the same at any pH.
+        those that no sample is in, so that the list is the same at any pH; with `rates` their changes per pH.
         """
         iron = choice.system(COMPANION) if COMPANION in target.channels else None
         needed = {*target.channels, *(iron.channels if iron else ())}
-        found = environments(self.X, self.ligands, needed, self.tied, choice.sulfur_solid)
+        found = environments(self.X, self.ligands, needed, self.tied, choice.sulfur_solid, rates)
         if iron is None:
             return found
         with np.errstate(divide="ignore", invalid="ignore"):
@@ -71,7 +73,9 @@ class Bath:
         split = []
         for environment in found:
             lines = iron.lines(self.X, np.where(known, log_total, -np.inf), environment)
-            split += with_companion(environment, COMPANION, lines.alpha, lines.beta, every)
+            per_pH = lines.per_pH(environment)[1] if rates else np.zeros_like(lines.alpha)
+            own = [PoolLine(lines.alpha[:, j], float(lines.beta[j]), per_pH[:, j]) for j in range(len(lines.beta))]
+            split += with_companion(environment, COMPANION, own, every)
         return split
 
 

@@ -6,14 +6,14 @@ At fixed pH, temperature, ionic strength and ligands the element activity at whi
 
 from collections.abc import Iterable
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
 
 import numpy as np
 
 from gley.constants import T0_K
 from gley.stability.data import Species, select
 from gley.stability.environment import Environment
-from gley.stability.water import FEATURES, coefficients, log_sum
+from gley.stability.water import FEATURES, coefficients, log_sum, mean_by_amount, product
 
 _NEAR_25 = 2.01 / T0_K**2
 
@@ -37,12 +37,13 @@ class System:
     counts: np.ndarray
     nu: np.ndarray
     candidates: tuple[np.ndarray, ...]
+    protons: np.ndarray
     solid: np.ndarray
     only_at_25: np.ndarray
 
     def terms(self, X: np.ndarray, environment: Environment) -> tuple[np.ndarray, np.ndarray]:
         """log m of each member at pe = 0 and unit element activity (n, S), −inf where it can't be, and d/dpe (S,)."""
-        q = X @ self.matrix
+        q = product(X, self.matrix)
         if self.only_at_25.any():
             q[np.ix_(away_from_25(X), self.only_at_25)] = -np.inf
         slopes = self.slopes.copy()
@@ -65,7 +66,7 @@ class System:
     def lines(self, X: np.ndarray, log_total: np.ndarray, environment: Environment) -> "Lines":
         """All candidates' lines for n samples in one environment."""
         q, slopes = self.terms(X, environment)
-        alpha = np.empty((len(X), len(self.candidates)))
+        alpha = np.empty((len(self.candidates), len(X))).T
         beta = np.empty(len(self.candidates))
         for j, members in enumerate(self.candidates):
             first = members[0]
@@ -74,16 +75,41 @@ class System:
             elif self.nu[first] > 1:
                 alpha[:, j] = (log_total - np.log10(self.nu[first]) - q[:, first]) / self.nu[first]
             else:
-                alpha[:, j] = log_total - log_sum(q[:, members])
-            beta[j] = -slopes[_prevailing(members, q, slopes)] / self.nu[first]
-        return Lines(self, q, slopes, alpha, beta)
+                alpha[:, j] = log_total - log_sum(columns(q, members))
+            beta[j] = -slopes[_prevailing(members, q)] / self.nu[first]
+        return Lines(self, q, slopes, alpha, beta, log_total)
+
+    @cached_property
+    def candidate_of(self) -> np.ndarray:
+        """Index of the candidate that each member belongs to (S,)."""
+        found = np.empty(len(self.members), int)
+        for j, members in enumerate(self.candidates):
+            found[members] = j
+        return found
+
+    @cached_property
+    def per_total(self) -> np.ndarray:
+        """Change of each candidate's line per log10 unit of the total (J,): 1 for a pool, 1/ν, 0 for a solid."""
+        first = np.array([members[0] for members in self.candidates])
+        return np.where(self.solid, 0.0, 1.0 / self.nu[first])
+
+    @cached_property
+    def kin(self) -> np.ndarray:
+        """Whether two different members are forms of one pool (S, S)."""
+        same = self.candidate_of[:, None] == self.candidate_of[None, :]
+        return same & ~np.eye(len(self.members), dtype=bool)
 
     def index(self, name: str) -> int:
         """Index of a member by its name."""
         return [item.name for item in self.members].index(name)
 
 
-def _prevailing(members: np.ndarray, q: np.ndarray, slopes: np.ndarray) -> int:
+def columns(table: np.ndarray, picked: np.ndarray) -> np.ndarray:
+    """Some columns of a table whose columns are contiguous; the copy's are too."""
+    return table.T[picked].T
+
+
+def _prevailing(members: np.ndarray, q: np.ndarray) -> int:
     """A member that is present: all present forms of a pool share one slope, left-out ones may carry another."""
     for member in members:
         if np.isfinite(q[:, member]).any():
@@ -100,6 +126,7 @@ class Lines:
     slopes: np.ndarray
     alpha: np.ndarray
     beta: np.ndarray
+    log_total: np.ndarray
 
     def at(self, pe: np.ndarray) -> np.ndarray:
         """log a of every candidate at each sample's pe (n, J)."""
@@ -111,8 +138,31 @@ class Lines:
         for j in np.unique(winner):
             rows = winner == j
             members = self.system.candidates[j]
-            named[rows] = members[self.q[np.ix_(rows, members)].argmax(axis=1)]
+            if len(members) == 1:
+                named[rows] = members[0]
+            else:
+                named[rows] = members[self.q[np.ix_(rows, members)].argmax(axis=1)]
         return named
+
+    def per_pH(self, environment: Environment) -> tuple[np.ndarray, np.ndarray]:
+        """Change per pH at constant pe, temperature and totals: of each member's log m (n, S), of each line (n, J)."""
+        target = self.system
+        forms = np.tile(-target.protons[:, None], len(self.q)).T
+        for c, channel in enumerate(target.channels):
+            rate = environment.per_pH.get(channel)
+            if rate is not None:
+                uses = np.flatnonzero(target.counts[:, c])
+                forms[:, uses] += target.counts[uses, c] * np.nan_to_num(rate)[:, None]
+        lines = np.empty_like(self.alpha)
+        for j, members in enumerate(target.candidates):
+            first = members[0]
+            if len(members) == 1:
+                lines[:, j] = -forms[:, first] / target.nu[first]
+            else:
+                with np.errstate(invalid="ignore"):
+                    whole = self.log_total - self.alpha[:, j]
+                lines[:, j] = -mean_by_amount(columns(self.q, members), whole, columns(forms, members))
+        return forms, lines
 
 
 @lru_cache(maxsize=256)
@@ -138,6 +188,7 @@ def build(element: str, members: Iterable[Species]) -> System:
         element=element, members=members, channels=channels, matrix=coefficients(members),
         slopes=np.array([-float(item.e) for item in members]), counts=counts.reshape(len(members), len(channels)),
         nu=np.array([float(item.nu) for item in members]), candidates=candidates,
+        protons=np.array([float(item.h) for item in members]),
         solid=np.array([not members[found[0]].dissolved for found in candidates]),
         only_at_25=np.array([item.only_at_25 for item in members]),
     )  # fmt: skip

@@ -64,12 +64,23 @@ def coefficients(members) -> np.ndarray:
     return np.array(columns).T.reshape(len(FEATURES), -1)
 
 
+def product(X: np.ndarray, matrix: np.ndarray) -> np.ndarray:
+    """X @ matrix with the columns contiguous in memory: sums and maxima over the forms then run along the samples."""
+    return (matrix.T @ X.T).T
+
+
 def log_sum(terms: np.ndarray) -> np.ndarray:
     """log10 of the sum of powers of ten along the last axis; −inf where all terms are."""
     top = terms.max(axis=-1, keepdims=True)
     safe = np.where(np.isfinite(top), top, 0.0)
-    with np.errstate(divide="ignore"):
-        return safe[..., 0] + np.log10(np.power(10.0, terms - safe).sum(axis=-1))
+    with np.errstate(divide="ignore"):  # exp is several times quicker than a power of ten
+        return safe[..., 0] + np.log10(np.exp((terms - safe) * LN10).sum(axis=-1))
+
+
+def mean_by_amount(terms: np.ndarray, log_total: np.ndarray, values: np.ndarray) -> np.ndarray:
+    """Mean (n,) of `values` (forms,) or (n, forms), weighted by powers of ten of `terms` whose `log_sum` is given."""
+    safe = np.where(np.isfinite(log_total), log_total, 0.0)
+    return (np.exp((terms - safe[:, None]) * LN10) * values).sum(axis=-1)
 
 
 @cache
@@ -90,7 +101,7 @@ def _pool_matrix(channel: str) -> np.ndarray:
 
 def pool_terms(channel: str, X: np.ndarray) -> np.ndarray:
     """log m of each form of a channel (n, forms) at pe = 0 and unit activity of its element."""
-    return X @ _pool_matrix(channel)
+    return product(X, _pool_matrix(channel))
 
 
 def fractions(channel: str, X: np.ndarray) -> dict[str, np.ndarray]:
