@@ -3,7 +3,7 @@
 Imports neither drawing nor file readers; takes tables and arrays and returns new ones.
 """
 
-from gley.stability.assign import assign, measured_elements
+from gley.stability.assign import Assignment, assign, assignment, measured_elements, named_fields
 from gley.stability.chart import chart, chart_at
 from gley.stability.chart_types import Boundary, Chart, Conditions, Field
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
@@ -14,17 +14,20 @@ from gley.stability.working import working
 __all__ = [
     "CHART_ONLY",
     "OFFERED",
+    "Assignment",
     "Boundary",
     "Chart",
     "Conditions",
     "Field",
     "IMPLAUSIBLE_mV",
     "assign",
+    "assignment",
     "beyond_water",
     "chart",
     "chart_at",
     "check_names",
     "measured_elements",
+    "named_fields",
     "reference",
     "species",
     "water_lines", "working",

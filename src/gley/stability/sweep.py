@@ -58,7 +58,7 @@ def sweep(
     for here, there in pairwise(seen):
         for control in control_points(here, there, step):
             least = np.minimum(least, control)
-    closes = least < _room(lines, looks[0][1], field, spread, points, least.shape[1])
+    closes = least < _room(lines, looks[0][1], field, spread, points, seen[0].value.shape[1])
     fences = len(looks[0][1].fences)
     own = closes.shape[1] - fences
     alpha, alpha_step, q, q_step = (np.array(part) for part in parts)
