@@ -37,6 +37,9 @@ Electrode = Annotated[str, typer.Option(help="Reference electrode where the file
 Crs = Annotated[
     str, typer.Option(help="Coordinate reference system, e.g. EPSG:25832; 'none' = no maps and GIS layers.")
 ]
+EhFrom = Annotated[
+    str, typer.Option("--eh-from", help="Potential for all elements: pt, or a measured couple, e.g. iron or sulfur.")
+]
 AsJson = Annotated[bool, typer.Option("--json", help="Print the answer as JSON.")]
 Overwrite = Annotated[bool, typer.Option("--overwrite", help="Replace what is there.")]
 Out = Annotated[Path | None, typer.Option("--out", help="Folder to write to.")]
@@ -75,6 +78,7 @@ def run(
     crs: Crs = "",
     elements: Annotated[str, typer.Option(help="Elements to assign, e.g. As,Fe,Mn; default the measured ones.")] = "",
     solids: Annotated[str, typer.Option(help="Solid set: fresh, aged or none; default as in the settings.")] = "",
+    eh_from: EhFrom = "",
     overwrite: Overwrite = False,
     as_json: AsJson = False,
 ) -> None:
@@ -85,7 +89,7 @@ def run(
     from gley import pipeline, wording
     from gley.delivery import refuse, restore
 
-    chosen = _settings(settings, electrode, crs, elements=elements, solids=solids)
+    chosen = _settings(settings, electrode, crs, elements=elements, solids=solids, eh_from=eh_from)
     folder = out or Path(f"{surveys[0].stem}_redox")
     _tell(f"Reading {', '.join(str(path) for path in surveys)}")
     if restore(folder):
@@ -300,7 +304,7 @@ def _exit_on_data_error(findings) -> None:
         raise typer.Exit(DATA_ERROR)
 
 
-def _settings(path: Path | None, electrode: str, crs: str, elements: str = "", solids: str = ""):
+def _settings(path: Path | None, electrode: str, crs: str, elements: str = "", solids: str = "", eh_from: str = ""):
     """Settings from the file with the options of the command over it."""
     from gley.settings import load
 
@@ -309,6 +313,8 @@ def _settings(path: Path | None, electrode: str, crs: str, elements: str = "", s
         groups["probe"] = {"electrode": electrode}
     if crs:
         groups["survey"] = {"crs": crs}
+    if eh_from:
+        groups["evidence"] = {"Eh_from": eh_from}
     stability: dict[str, Any] = {}
     if elements:
         stability["elements"] = [part.strip() for part in elements.split(",") if part.strip()]

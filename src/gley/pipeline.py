@@ -44,22 +44,32 @@ def run(
     clock.lap("survey")
     findings = Findings(survey.findings)
     eh = probe.to_Eh(survey, settings, findings)
-    waters = engine_table(survey, eh)
-    water_line_findings(waters, survey, findings)
+    read = engine_table(survey, eh)
+    water_line_findings(read, survey, findings)
     clock.lap("probe")
+    couples = evidence.couples_table(read, settings, findings)
+    eh = evidence.Eh_from(eh, survey.samples["sample"], couples, settings, findings)
+    waters = engine_table(survey, eh)
     # a map that can't be drawn is refused before the long part of the work
     places = site.places(survey, settings, findings)
     elements, settings = choose_elements(survey, settings, findings)
-    fields = set_aside(stability.assign(waters, elements, settings), waters)
+    assigned = stability.assignment(waters, elements, settings)
+    fields = set_aside(assigned.fields, waters)
+    rivals = assigned.rivals[assigned.rivals["sample"].isin(fields.loc[fields["field"] != "", "sample"])]
     _status_findings(fields, findings)
     clock.lap("stability")
     process = evidence.process_table(survey.amounts, settings)
+    fields = evidence.with_measured(fields, waters, couples, settings, findings)
+    scenarios = evidence.scenario_table(fields, waters, couples, settings)
+    fields = evidence.with_robust(fields, scenarios)
+    clock.lap("evidence")
     charts = chart_sheets(waters, fields, elements, settings)
     fields = with_background(fields, charts, findings)
     clock.lap("charts")
     return Result(
         survey=survey, settings=settings, eh=eh, fields=fields, evidence=process, places=places, charts=charts,
-        findings=findings, elements=elements, timing=clock.laps, command=command,
+        findings=findings, elements=elements, rivals=rivals, couples=couples, scenarios=scenarios,
+        timing=clock.laps, command=command,
     )  # fmt: skip
 
 

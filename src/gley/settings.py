@@ -85,7 +85,11 @@ class StabilitySettings:
     )
     assumed_soil_mol_L: float = _set(1e-5, "total of Fe and Mn taken for soils without metals", "mol/L", low=0)
     assumed_temperature_C: float = _set(25.0, "temperature where none is known for the round", "°C", low=-5, high=100)
-    sulfur: str = _set("measured", "sulfate and sulfide as measured, or tied by Eh", allowed=("measured", "tied"))
+    sulfur: str = _set(
+        "measured",
+        "sulfate and sulfide as measured (tied by Eh where sulfide wasn't), always tied, or sulfate inert",
+        allowed=("measured", "tied", "inert"),
+    )
     default_ionic_strength_M: float = _set(0.010, "ionic strength where nothing tells it", "mol/L", low=0)
     charge_balance_percent: float = _set(10.0, "majors give the ionic strength if they balance within this", "%", low=0)
     pH_sd_field: float = _set(0.1, "standard deviation of a field pH", low=0)
@@ -100,8 +104,15 @@ class StabilitySettings:
 
 @dataclass(frozen=True)
 class EvidenceSettings:
-    """Thresholds of the redox process from chemistry (McMahon & Chapelle 2008; Chapelle et al. 2009)."""
+    """Whose potential counts, and thresholds of the redox process (McMahon & Chapelle 2008; Chapelle et al. 2009)."""
 
+    Eh_from: str = _set(
+        "pt", "potential taken for all elements: the platinum electrode's, or a measured couple's where there is one",
+        allowed=(
+            "pt", "iron", "iron dissolved", "manganese", "arsenic", "chromium", "selenium", "antimony", "sulfur",
+            "nitrogen", "nitrite", "carbon", "oxygen",
+        ),
+    )  # fmt: skip
     O2_mg_L: float = _set(0.5, "dissolved oxygen: from here on oxic", "mg/L", low=0)
     NO3_N_mg_L: float = _set(0.5, "nitrate as nitrogen: from here on nitrate prevails", "mg/L", low=0)
     Mn_ug_L: float = _set(50.0, "manganese: from here on Mn(IV) is reduced", "µg/L", low=0)

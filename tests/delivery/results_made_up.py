@@ -39,7 +39,7 @@ def eh_made_up():
         "Eh_mV": [4.9, 316.04, np.nan, -3.2], "Eh_sd_mV": [30.0, 15.0, np.nan, 60.0], "pe": [0.09, 5.6, np.nan, -0.04],
         "reference_mV": [208.9, 216.04, np.nan, -3.2], "check_offset_mV": [0.0, 0.0, np.nan, 0.0],
         "Eh_sd_own_mV": [30.0, 15.0, np.nan, 60.0], "Eh_sd_common_mV": [0.0, 0.0, np.nan, 0.0],
-        "temperature_used_C": [10.5, 9.9, 25.0, 11.0],
+        "temperature_used_C": [10.5, 9.9, 25.0, 11.0], "Eh_platinum_mV": [np.nan] * 4,
     }  # fmt: skip
     eh = eh.assign(**numbers)
     eh["Eh_status"] = ["ok", "ok", "no ORP", "ok"]

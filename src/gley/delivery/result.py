@@ -29,7 +29,9 @@ class ChartSheet:
 
 @dataclass(frozen=True)
 class Result:
-    """A run: `eh`, `evidence` and `places` have the index of `survey.samples`, `fields` a row per sample × element."""
+    """A run: `eh`, `evidence` and `places` have the index of `survey.samples`, `fields` a row per sample × element,
+    `rivals` one per field that a sample may lie in, `couples` per measured couple, `scenarios` per assumption tried.
+    """
 
     survey: Survey
     settings: Settings
@@ -40,5 +42,8 @@ class Result:
     charts: tuple[ChartSheet, ...]
     findings: Findings
     elements: tuple[str, ...]
+    rivals: pd.DataFrame = field(default_factory=pd.DataFrame)
+    couples: pd.DataFrame = field(default_factory=pd.DataFrame)
+    scenarios: pd.DataFrame = field(default_factory=pd.DataFrame)
     timing: dict[str, float] = field(default_factory=dict)
     command: str = ""

@@ -20,6 +20,7 @@ _DATA = (
     ("gley.probe", "electrodes.csv"),
     ("gley.probe", "solutions.csv"),
     ("gley.stability", "species.csv"),
+    ("gley.stability", "couples.csv"),
 )
 
 _READING = (("gley.data", "columns.csv"), ("gley.survey", "headers.csv"))

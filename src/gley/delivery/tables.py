@@ -13,18 +13,19 @@ _COLUMNS = (
     "sample", "station", "date", "time", "round", "sample_type", "duplicate_of", "pH", "pH_where", "pH_lab",
     "temperature_C", "SC_uS_cm", "EC_uS_cm", "O2_percent", "turbidity_NTU", "water_level_m", "depth_cm", "depth_top_m",
     "depth_bottom_m", "ORP_mV", "ORP_replicates", "ORP_spread_mV", "Eh_given_mV", "probe", "electrode_used",
-    "reference_mV", "check_offset_mV", "Eh_mV", "Eh_sd_mV", "Eh_sd_own_mV", "Eh_sd_common_mV", "pe",
+    "reference_mV", "check_offset_mV", "Eh_platinum_mV", "Eh_mV", "Eh_sd_mV", "Eh_sd_own_mV", "Eh_sd_common_mV", "pe",
     "temperature_used_C", "temperature_basis", "Eh_basis", "Eh_status",
 )  # fmt: skip
 _WHERE_DELIVERED = (
     "duplicate_of", "pH_lab", "EC_uS_cm", "O2_percent", "turbidity_NTU", "water_level_m", "depth_cm", "depth_top_m",
-    "depth_bottom_m", "ORP_replicates", "ORP_spread_mV", "Eh_given_mV", "probe",
+    "depth_bottom_m", "ORP_replicates", "ORP_spread_mV", "Eh_given_mV", "probe", "Eh_platinum_mV",
 )  # fmt: skip
 """Left out where no sample has one."""
 
 _DIGITS = {
-    "Eh_mV": -1, "reference_mV": 0, "check_offset_mV": 0, "Eh_sd_mV": 0, "Eh_sd_own_mV": 0, "Eh_sd_common_mV": 0,
-    "ORP_mV": 0, "ORP_spread_mV": 0, "pe": 1, "pH": 2, "temperature_C": 1, "temperature_used_C": 1,
+    "Eh_mV": -1, "Eh_platinum_mV": -1, "reference_mV": 0, "check_offset_mV": 0, "Eh_sd_mV": 0, "Eh_sd_own_mV": 0,
+    "Eh_sd_common_mV": 0, "ORP_mV": 0, "ORP_spread_mV": 0, "pe": 1, "pH": 2, "temperature_C": 1,
+    "temperature_used_C": 1,
 }  # fmt: skip
 _SHORT = ("sample", "station", "date", "round", "pH", "temperature_C", "ORP_mV", "Eh_mV", "Eh_sd_mV", "pe")
 _WGS84 = "EPSG:4326"
@@ -55,6 +56,12 @@ def field_table(result: Result) -> pd.DataFrame:
     """One row per sample and element: the columns of the vocabulary in its order, others behind."""
     first = [name for name in ("sample", "element", *columns("fields")) if name in result.fields]
     return result.fields[[*first, *[name for name in result.fields if name not in first]]]
+
+
+def evidence_table(table: pd.DataFrame, name: str) -> pd.DataFrame:
+    """A table of rivals, couples or scenarios: sample, element where it has one, the vocabulary's columns in order."""
+    order = [column for column in ("sample", "element") if column in table or column == "sample"]
+    return table.reindex(columns=[*order, *columns(name)])
 
 
 def by_sample(result: Result, element: str, column: str) -> np.ndarray:

@@ -13,7 +13,15 @@ from gley.delivery.page import map_title, page
 from gley.delivery.result import ChartSheet, Result
 from gley.delivery.sheets import as_record, draw
 from gley.delivery.stamp import data_version, made_at, stamp
-from gley.delivery.tables import boundary_table, by_sample, field_table, finding_table, printed, sample_table
+from gley.delivery.tables import (
+    boundary_table,
+    by_sample,
+    evidence_table,
+    field_table,
+    finding_table,
+    printed,
+    sample_table,
+)
 from gley.delivery.workbook import MOST_ROWS, write_workbook
 from gley.drawing import EphChart, SiteMap
 from gley.errors import GleyError
@@ -55,6 +63,8 @@ def _fill(result: Result, folder: Path, restored: bool, name: str) -> None:
     samples = sample_table(result)
     _csv(samples, folder / "samples.csv")
     _csv(field_table(result), folder / "fields.csv")
+    for key in ("rivals", "couples", "scenarios"):
+        _csv(evidence_table(getattr(result, key), key), folder / f"{key}.csv")
     _workbook(result, samples, folder / "samples.xlsx")
     _csv(finding_table(result.findings), folder / "findings.csv")
     if result.places is not None:

@@ -6,6 +6,7 @@ Imports neither drawing nor file readers; takes tables and arrays and returns ne
 from gley.stability.assign import Assignment, assign, assignment, measured_elements, named_fields
 from gley.stability.chart import chart, chart_at
 from gley.stability.chart_types import Boundary, Chart, Conditions, Field
+from gley.stability.couples import couple_potentials, couples
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
 from gley.stability.reference import reference
 from gley.stability.water import IMPLAUSIBLE_mV, beyond_water, water_lines
@@ -26,6 +27,8 @@ __all__ = [
     "chart",
     "chart_at",
     "check_names",
+    "couple_potentials",
+    "couples",
     "measured_elements",
     "named_fields",
     "reference",

@@ -145,7 +145,7 @@ def ionic_strength(frame: pd.DataFrame, balance_percent: float, default_M: float
     known = constituents()
     positive, negative, strength = (np.zeros(len(frame)) for _ in range(3))
     for key in ("Ca", "Mg", "Na", "K", "NH4", "Fe", "Mn", "Cl", "SO4", "NO3", "NO2", "F"):
-        amount = _column(frame, known[key].column)
+        amount = column_of(frame, known[key].column)
         charge = known[key].charge
         strength += 0.5 * np.nan_to_num(amount) * charge**2
         side = positive if charge > 0 else negative
@@ -153,14 +153,14 @@ def ionic_strength(frame: pd.DataFrame, balance_percent: float, default_M: float
     alkalinity = _alkalinity(frame)
     negative += np.nan_to_num(alkalinity)
     strength += 0.5 * np.nan_to_num(alkalinity)
-    acid = np.power(10.0, -np.nan_to_num(_column(frame, "pH"), nan=7.0))
+    acid = np.power(10.0, -np.nan_to_num(column_of(frame, "pH"), nan=7.0))
     positive, strength = positive + acid, strength + 0.5 * acid
     complete = ~np.isnan(alkalinity)
     for key in _CORE_IONS:
-        complete &= ~np.isnan(_column(frame, known[key].column))
+        complete &= ~np.isnan(column_of(frame, known[key].column))
     total = positive + negative
     error = 100 * np.abs(positive - negative) / np.where(total > 0, total, 1.0)
-    conductivity = _column(frame, "SC_uS_cm")
+    conductivity = column_of(frame, "SC_uS_cm")
     majors = complete & (error <= balance_percent)
     by_conductivity = _CONDUCTIVITY_FACTOR * conductivity
     value = np.where(majors, strength, np.where(np.isnan(by_conductivity), default_M, by_conductivity))
@@ -176,7 +176,7 @@ def inorganic_carbon(frame: pd.DataFrame, X: np.ndarray) -> np.ndarray:
     Taken from alkalinity first: OH^-, H^+ and, where measured, HS^-, NH3, phosphate and silicate. Unknown below pH 4.5
     (the alkalinity end point), where alkalinity says nothing about carbon.
     """
-    pH, alkalinity = _column(frame, "pH"), _alkalinity(frame)
+    pH, alkalinity = column_of(frame, "pH"), _alkalinity(frame)
     hydroxide = np.power(10.0, (X @ coefficients([species()["OH^-"]]))[:, 0])
     proton = np.power(10.0, -pH - X[:, FEATURES.index("Davies")])
     rest = alkalinity - hydroxide + proton
@@ -186,7 +186,7 @@ def inorganic_carbon(frame: pd.DataFrame, X: np.ndarray) -> np.ndarray:
         ("PO4", "P(V)", {"HPO4^2-": 1, "PO4^3-": 2, "H3PO4(aq)": -1}),
         ("Si", "Si(IV)", {"H3SiO4^-": 1}),
     ):
-        amount = np.nan_to_num(_column(frame, f"{key}_mol_L"))
+        amount = np.nan_to_num(column_of(frame, f"{key}_mol_L"))
         if not amount.any():
             continue
         shares = fractions(channel, X)
@@ -195,18 +195,18 @@ def inorganic_carbon(frame: pd.DataFrame, X: np.ndarray) -> np.ndarray:
     per_carbon = shares["HCO3^-"] + 2 * shares["CO3^2-"]
     with np.errstate(divide="ignore", invalid="ignore"):
         carbon = np.where(pH >= DIC_MIN_PH, np.maximum(rest, 0.0) / per_carbon, np.nan)
-    measured = _column(frame, "DIC_mol_L")
+    measured = column_of(frame, "DIC_mol_L")
     return np.where(np.isnan(measured), carbon, measured)
 
 
 def _alkalinity(frame: pd.DataFrame) -> np.ndarray:
     """Alkalinity in eq/L: as measured, else bicarbonate and twice carbonate."""
-    given = _column(frame, "alkalinity_eq_L")
-    bicarbonate = _column(frame, "HCO3_mol_L") + 2 * np.nan_to_num(_column(frame, "CO3_mol_L"))
+    given = column_of(frame, "alkalinity_eq_L")
+    bicarbonate = column_of(frame, "HCO3_mol_L") + 2 * np.nan_to_num(column_of(frame, "CO3_mol_L"))
     return np.where(np.isnan(given), bicarbonate, given)
 
 
-def _column(frame: pd.DataFrame, name: str) -> np.ndarray:
+def column_of(frame: pd.DataFrame, name: str) -> np.ndarray:
     """A numeric column of a frame, NaN throughout where it isn't there."""
     if name not in frame:
         return np.full(len(frame), np.nan)

@@ -14,6 +14,7 @@ from gley.constants import nernst_slope_mV
 from gley.settings import StabilitySettings
 from gley.stability import water
 from gley.stability.data import COMPANION, FIXED, SULFUR
+from gley.stability.environment import pool_line
 from gley.stability.solve import Bath
 
 LIGAND_INPUTS = {channel: analysis for channel, (_, analysis) in FIXED.items()} | SULFUR
@@ -75,12 +76,12 @@ def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySe
     settings : StabilitySettings
         Assumed totals, sulfur treatment, ionic strength rules.
     """
-    pH = water._column(frame, "pH")
-    temperature = water._column(frame, "temperature_C")
+    pH = water.column_of(frame, "pH")
+    temperature = water.column_of(frame, "temperature_C")
     basis_T = frame.get("temperature_basis", pd.Series("", index=frame.index)).fillna("").astype(str)
     temperature_assumed = np.isnan(temperature) | basis_T.str.startswith("assumed").to_numpy()
     temperature = np.where(np.isnan(temperature), settings.assumed_temperature_C, temperature)
-    Eh = water._column(frame, "Eh_mV")
+    Eh = water.column_of(frame, "Eh_mV")
     strength, basis = water.ionic_strength(frame, settings.charge_balance_percent, settings.default_ionic_strength_M)
     X = water.features(np.nan_to_num(pH, nan=7.0), temperature, strength)
     totals, ligands, limited, assumed = {}, {}, {}, {}
@@ -90,21 +91,40 @@ def waters(frame: pd.DataFrame, elements: tuple[str, ...], settings: StabilitySe
     for channel, key in LIGAND_INPUTS.items():
         ligands[channel], limited[channel], assumed[channel] = _total(frame, key, settings)
     ligands["C(IV)"], assumed["C(IV)"] = _filled(water.inorganic_carbon(frame, X), "DIC", settings)
+    pe = Eh / nernst_slope_mV(temperature)
+    if settings.sulfur == "measured":
+        idle = _sulfide_below_limit(X, pe, ligands, limited["S(-II)"])
+        ligands["S(-II)"] = np.where(idle, np.nan, ligands["S(-II)"])
+        limited["S(-II)"] = limited["S(-II)"] & ~idle
     if "S" in totals:
         totals["S"] = totals["S"] + np.nan_to_num(ligands["S(-II)"])
         limited["S"] = limited["S(VI)"] & (limited["S(-II)"] | np.isnan(ligands["S(-II)"]))
     tied = np.isnan(ligands["S(-II)"]) & ~np.isnan(ligands["S(VI)"])
     if settings.sulfur == "tied":
         tied = ~np.isnan(ligands["S(VI)"])
+    elif settings.sulfur == "inert":
+        tied = np.zeros(len(frame), bool)
     return Waters(
-        pH, Eh, Eh / nernst_slope_mV(temperature), temperature, strength, basis, X,
+        pH, Eh, pe, temperature, strength, basis, X,
         totals, ligands, limited, assumed, tied, temperature_assumed, pH < water.DIC_MIN_PH,
     )  # fmt: skip
 
 
+def _sulfide_below_limit(X: np.ndarray, pe: np.ndarray, ligands: Mapping[str, np.ndarray], limited: np.ndarray):
+    """Where sulfide wasn't detected and Eh leaves less of it than the limit (n,): there the limit says nothing.
+
+    Sulfide at its limit beside sulfate at a high Eh would make pyrite of oxic water.
+    """
+    sulfate = pool_line("S(VI)", X, ligands["S(VI)"], rates=False)
+    unit = pool_line("S(-II)", X, np.ones(len(X)), rates=False)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        computed = sulfate.level - unit.level + (sulfate.slope - unit.slope) * pe
+        return limited & (computed < np.log10(ligands["S(-II)"]))
+
+
 def _total(frame: pd.DataFrame, key: str, settings: StabilitySettings) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Amounts of a constituent, where they are upper bounds, and where the settings' value was taken."""
-    values = water._column(frame, amount_column(key))
+    values = water.column_of(frame, amount_column(key))
     flags = frame.get(f"{key}_limit")
     limited = np.zeros(len(frame), bool) if flags is None else (flags.fillna("").astype(str) == "<").to_numpy()
     values, assumed = _filled(values, key, settings)
