@@ -170,7 +170,7 @@ def eh(
 
 @app.command()
 def chart(
-    element: Annotated[str, typer.Argument(help="Element: Fe, Mn, As, S, N or C.")],
+    element: Annotated[str, typer.Argument(help="Element, e.g. Fe, As, U, S, N; `gley chart ?` lists them.")],
     total: Annotated[str, typer.Option(help="Dissolved total in mol/L; several as 1e-6,1e-4.")] = "1e-6",
     temperature: Annotated[str, typer.Option(help="Temperature in °C; several as 25,5.")] = "25",
     ligand: Annotated[
@@ -184,6 +184,13 @@ def chart(
         list[str] | None, typer.Option("--without", metavar="NAME", help="Leave a species or solid out.")
     ] = None,
     ionic_strength: Annotated[float, typer.Option(help="Ionic strength in mol/L.")] = 0.010,
+    inert: Annotated[str, typer.Option(help="Taken not to react: N2, sulfate, or both as N2,sulfate.")] = "",
+    over: Annotated[
+        str, typer.Option(metavar="ELEMENT[=TOTAL]", help="Lay this element's lines over it; total as --total.")
+    ] = "",
+    fan: Annotated[
+        bool, typer.Option("--fan", help="Draw the first of 2 or 3 conditions and shade how far its lines move.")
+    ] = False,
     out: Out = None,
     overwrite: Overwrite = False,
     as_json: AsJson = False,
@@ -192,18 +199,17 @@ def chart(
 
     Example: gley chart Fe --total 1e-5 --ligand C=2e-3 --out charts
     """
-    from gley import stability, wording
+    from gley import wording
+    from gley.charts import Wish, plain_charts
     from gley.delivery import write_charts
 
-    ligands = dict(_pair(text) for text in ligand or [])
-    charts = [
-        stability.chart(
-            element, amount, warmth, ionic_strength_M=ionic_strength, ligands=ligands, solids=solids,
-            with_names=tuple(with_names or ()), without_names=tuple(without or ()),
-        )
-        for amount in _numbers(total, "--total in mol/L")
-        for warmth in _numbers(temperature, "--temperature in °C")
-    ]  # fmt: skip
+    totals = _numbers(total, "--total in mol/L")
+    wish = Wish(
+        element, totals, _numbers(temperature, "--temperature in °C"), dict(_pair(text) for text in ligand or []),
+        solids, tuple(with_names or ()), tuple(without or ()), ionic_strength, _words(inert),
+    )  # fmt: skip
+    above = (_pair(over, "--over") if "=" in over else (over, totals[0])) if over else None
+    charts = plain_charts(wish, above, fan)
     files = write_charts(charts, out, overwrite) if out else []
     records = [item.as_dict() for item in charts]
     _answer(
@@ -317,7 +323,7 @@ def _settings(path: Path | None, electrode: str, crs: str, elements: str = "", s
         groups["evidence"] = {"Eh_from": eh_from}
     stability: dict[str, Any] = {}
     if elements:
-        stability["elements"] = [part.strip() for part in elements.split(",") if part.strip()]
+        stability["elements"] = list(_words(elements))
     if solids:
         stability["solids"] = solids
     return load(path, **groups, **({"stability": stability} if stability else {}))
@@ -335,10 +341,14 @@ def _numbers(text: str, what: str) -> list[float]:
     return [_number(part.strip(), what) for part in text.split(",")]
 
 
-def _pair(text: str) -> tuple[str, float]:
+def _words(text: str) -> tuple[str, ...]:
+    return tuple(part.strip() for part in text.split(",") if part.strip())
+
+
+def _pair(text: str, option: str = "--ligand") -> tuple[str, float]:
     name, sign, amount = text.partition("=")
     if not sign:
-        message = f"--ligand '{text}' isn't NAME=TOTAL."
+        message = f"{option} '{text}' isn't NAME=TOTAL."
         raise UsageError(message, "Write it like S=1e-3 (mol/L).")
     return name.strip(), _number(amount.strip(), f"total of {name} in mol/L")
 

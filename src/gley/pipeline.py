@@ -8,7 +8,7 @@ import numpy as np
 import pandas as pd
 
 from gley import delivery, evidence, probe, site, stability
-from gley.charts import chart_sheets, with_background
+from gley.charts import chart_sheets, overlap_counts, with_background
 from gley.columns import amount_column, columns
 from gley.delivery import Result
 from gley.errors import UsageError
@@ -69,7 +69,7 @@ def run(
     return Result(
         survey=survey, settings=settings, eh=eh, fields=fields, evidence=process, places=places, charts=charts,
         findings=findings, elements=elements, rivals=rivals, couples=couples, scenarios=scenarios,
-        timing=clock.laps, command=command,
+        overlaps=overlap_counts(charts, fields), timing=clock.laps, command=command,
     )  # fmt: skip
 
 

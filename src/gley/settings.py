@@ -131,6 +131,7 @@ class ChartSettings:
     Eh_min_mV: float = _set(-400.0, "lower end of the Eh axis", "mV", low=-2500, high=2500)
     Eh_max_mV: float = _set(800.0, "upper end of the Eh axis", "mV", low=-2500, high=2500)
     dpi: int = _set(300, "resolution of PNG figures", low=50, high=1200)
+    over: tuple = _set(("As/Fe",), "overlays drawn for a survey, OVER/UNDER, where both elements were assigned")
     fan: bool = _set(True, "draw how far lines move between the P10 and P90 of the totals")
     background_mismatch: float = _set(
         0.30, "share of points off their drawn field from which the chart says so", low=0, high=1

@@ -5,7 +5,7 @@ from typing import Any
 
 import pandas as pd
 
-from gley.delivery import Result
+from gley.delivery import PlainChart, Result
 from gley.findings import Findings
 from gley.stability import Chart, Conditions
 from gley.survey import Survey
@@ -96,21 +96,30 @@ def conditions_text(conditions: Conditions) -> str:
     return ", ".join(parts)
 
 
-def chart_text(charts: list[Chart]) -> str:
-    """Fields and lines of each chart as text."""
+def chart_text(charts: list[PlainChart]) -> str:
+    """Fields and lines of each chart as text, and the regions that two elements share."""
     blocks = []
     for item in charts:
-        lines = [f"{item.element}: {conditions_text(item.conditions)}", "Fields:"]
-        lines += [f"  {field.name} ({field.kind}, {field.oxidation_state})" for field in item.fields]
-        lines.append("Lines:")
-        for edge in item.boundaries:
-            if edge.slope_mV_per_pH is None:
-                where = f"pH {edge.pH:.2f}"
-            else:
-                where = f"{edge.slope_mV_per_pH:+.1f} mV/pH, {edge.E_mV_at_pH0:.0f} mV at pH 0"
-            lines.append(f"  {edge.kind:<10} {edge.reaction}   [{where}]")
-        blocks.append("\n".join(lines))
+        blocks.append(_one_chart(item.chart))
+        blocks += [_one_chart(part) for part in (item.over, *(item.fan or ())) if part is not None]
+        if item.over is not None:
+            lines = [f"{item.over.element} over {item.chart.element}, part of the chart:"]
+            lines += [f"  {100 * part.share:5.1f} %  {part.over} over {part.under}" for part in item.overlaps]
+            blocks.append("\n".join(lines))
     return "\n\n".join(blocks)
+
+
+def _one_chart(item: Chart) -> str:
+    lines = [f"{item.element}: {conditions_text(item.conditions)}", "Fields:"]
+    lines += [f"  {field.name} ({field.kind}, {field.oxidation_state})" for field in item.fields]
+    lines.append("Lines:")
+    for edge in item.boundaries:
+        if edge.slope_mV_per_pH is None:
+            where = f"pH {edge.pH:.2f}"
+        else:
+            where = f"{edge.slope_mV_per_pH:+.1f} mV/pH, {edge.E_mV_at_pH0:.0f} mV at pH 0"
+        lines.append(f"  {edge.kind:<10} {edge.reaction}   [{where}]")
+    return "\n".join(lines)
 
 
 def data_record(element: str | None) -> dict[str, Any]:

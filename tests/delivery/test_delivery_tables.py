@@ -30,7 +30,7 @@ def test_all_files_of_the_design_are_there(delivered):
     _, folder = delivered
     found = {path.relative_to(folder).as_posix() for path in folder.rglob("*") if path.is_file()}
     wanted = {"report.html", "run.json", "samples.csv", "samples.xlsx", "samples.gpkg", "fields.csv", "findings.csv"}
-    wanted |= {"rivals.csv", "couples.csv", "scenarios.csv"}
+    wanted |= {"rivals.csv", "couples.csv", "scenarios.csv", "overlaps.csv"}
     wanted |= {
         f"charts/{key}{suffix}" for key in ("As", "Fe", "Mn", "As_over_Fe") for suffix in (".svg", ".png", ".json")
     }

@@ -30,7 +30,8 @@ class ChartSheet:
 @dataclass(frozen=True)
 class Result:
     """A run: `eh`, `evidence` and `places` have the index of `survey.samples`, `fields` a row per sample × element,
-    `rivals` one per field that a sample may lie in, `couples` per measured couple, `scenarios` per assumption tried.
+    `rivals` one per field that a sample may lie in, `couples` per measured couple, `scenarios` per assumption tried,
+    `overlaps` per pair of fields of two elements laid over each other.
     """
 
     survey: Survey
@@ -45,5 +46,6 @@ class Result:
     rivals: pd.DataFrame = field(default_factory=pd.DataFrame)
     couples: pd.DataFrame = field(default_factory=pd.DataFrame)
     scenarios: pd.DataFrame = field(default_factory=pd.DataFrame)
+    overlaps: pd.DataFrame = field(default_factory=pd.DataFrame)
     timing: dict[str, float] = field(default_factory=dict)
     command: str = ""

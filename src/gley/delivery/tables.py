@@ -59,8 +59,8 @@ def field_table(result: Result) -> pd.DataFrame:
 
 
 def evidence_table(table: pd.DataFrame, name: str) -> pd.DataFrame:
-    """A table of rivals, couples or scenarios: sample, element where it has one, the vocabulary's columns in order."""
-    order = [column for column in ("sample", "element") if column in table or column == "sample"]
+    """A table of rivals, couples, scenarios or overlaps: sample and element if any, then the vocabulary's."""
+    order = [column for column in ("sample", "element") if column in table]
     return table.reindex(columns=[*order, *columns(name)])
 
 

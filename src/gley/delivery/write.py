@@ -12,7 +12,7 @@ from gley.delivery.layers import write_layers
 from gley.delivery.page import map_title, page
 from gley.delivery.result import ChartSheet, Result
 from gley.delivery.sheets import as_record, draw
-from gley.delivery.stamp import data_version, made_at, stamp
+from gley.delivery.stamp import made_at, stamp
 from gley.delivery.tables import (
     boundary_table,
     by_sample,
@@ -23,11 +23,9 @@ from gley.delivery.tables import (
     sample_table,
 )
 from gley.delivery.workbook import MOST_ROWS, write_workbook
-from gley.drawing import EphChart, SiteMap
-from gley.errors import GleyError
+from gley.drawing import SiteMap
 from gley.findings import Findings
 from gley.jsonform import to_json
-from gley.stability import Chart
 
 
 def write(result: Result, folder: Path, overwrite: bool = False) -> list[Path]:
@@ -63,7 +61,7 @@ def _fill(result: Result, folder: Path, restored: bool, name: str) -> None:
     samples = sample_table(result)
     _csv(samples, folder / "samples.csv")
     _csv(field_table(result), folder / "fields.csv")
-    for key in ("rivals", "couples", "scenarios"):
+    for key in ("rivals", "couples", "scenarios", "overlaps"):
         _csv(evidence_table(getattr(result, key), key), folder / f"{key}.csv")
     _workbook(result, samples, folder / "samples.xlsx")
     _csv(finding_table(result.findings), folder / "findings.csv")
@@ -115,35 +113,3 @@ def _maps(result: Result, folder: Path) -> None:
     for name, (title, values) in layers.items():
         frame = places.assign(category=values, round=result.survey.samples["round"].to_numpy())
         SiteMap().draw(frame, "category", title=title).save(folder / name, dpi=result.settings.chart.dpi)
-
-
-def write_charts(charts: list[Chart], folder: Path, overwrite: bool = False) -> list[Path]:
-    """Write charts without a survey: drawing, data and lines of each, named by element (and conditions, if several).
-
-    Raises
-    ------
-    GleyError
-        When one of the files exists and `overwrite` isn't set, or the folder can't be written.
-    """
-    names = _names(charts)
-    wanted = [folder / f"{name}{suffix}" for name in names for suffix in (".svg", ".png", ".json", ".csv")]
-    there = [path for path in wanted if path.exists()]
-    if there and not overwrite:
-        message = f"{there[0]} is there already; nothing was changed."
-        raise GleyError(message, "Name another folder with --out, or give --overwrite.")
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-        for name, chart in zip(names, charts, strict=True):
-            EphChart().draw(chart).caption([f"Data {data_version()}."]).save(folder / name)
-            _json(chart.as_dict(), folder / f"{name}.json")
-            _csv(boundary_table(chart), folder / f"{name}.csv")
-    except OSError as error:
-        message = f"{folder}: can't be written ({error.strerror or error})."
-        raise GleyError(message, "Check the path and its permissions.") from None
-    return wanted
-
-
-def _names(charts: list[Chart]) -> list[str]:
-    if len(charts) == 1:
-        return [charts[0].element]
-    return [f"{item.element}_{item.conditions.total_mol_L:g}M_{item.conditions.temperature_C:g}C" for item in charts]

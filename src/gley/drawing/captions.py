@@ -33,13 +33,18 @@ def conditions_line(chart: Chart) -> str:
     return " · ".join(parts)
 
 
-def fan_line(low: Chart, high: Chart, *, seen: bool) -> str:
-    """What the shaded bands mean."""
+def fan_line(low: Chart, high: Chart, *, seen: bool, percentiles: bool) -> str:
+    """What the shaded bands mean: between two percentiles of a survey's totals, or two stated conditions."""
     element = low.element
     totals = [amount_text(item.conditions.total_mol_L, element) for item in (low, high)]
-    if not seen:
-        return f"No line moves between the P10 and P90 of total {element}, {totals[0]} and {totals[1]}."
-    return f"Shaded: the field changes between the P10 and P90 of total {element}, {totals[0]} and {totals[1]}."
+    warmth = [f"{item.conditions.temperature_C:g}\u00a0°C" for item in (low, high)]
+    if percentiles:
+        ends = f"the P10 and P90 of total {element}, {totals[0]} and {totals[1]}"
+    elif totals[0] == totals[1]:
+        ends = f"{warmth[0]} and {warmth[1]}"
+    else:
+        ends = f"{totals[0]} at {warmth[0]} and {totals[1]} at {warmth[1]}"
+    return f"Shaded: the field changes between {ends}." if seen else f"No line moves between {ends}."
 
 
 def made_by() -> str:

@@ -58,6 +58,7 @@ class EphChart:
         self._chart: Chart | None = None
         self._over: Chart | None = None
         self._fan: tuple[Chart, Chart, bool] | None = None
+        self._percentiles = True
         self._points: Points | None = None
         self._lines: list[str] | None = [] if self._own else None
         self._title = ""
@@ -102,12 +103,13 @@ class EphChart:
             layers.draw_lines(self.ax, chart.boundaries, self.ids, over=True)
         return self
 
-    def fan(self, low_chart: Chart, high_chart: Chart) -> "EphChart":
-        """Shade how far lines move between a low and a high total (P10 and P90 of the survey)."""
+    def fan(self, low_chart: Chart, high_chart: Chart, percentiles: bool = True) -> "EphChart":
+        """Shade how far lines move between two charts: at the P10 and P90 of a survey's totals, or as stated."""
         self._ready()
         with style.look():
             seen = layers.draw_fan(self.ax, low_chart, high_chart, self._frame, self.ids)
         self._fan = (low_chart, high_chart, seen)
+        self._percentiles = percentiles
         return self
 
     def points(self, frame: pd.DataFrame) -> "EphChart":
@@ -197,7 +199,7 @@ class EphChart:
             lines.append(f"Over it, boxed: {conditions_line(self._over)}")
         if self._fan is not None:
             low, high, seen = self._fan
-            lines.append(fan_line(low, high, seen=seen))
+            lines.append(fan_line(low, high, seen=seen, percentiles=self._percentiles))
         if self._points is not None:
             lines.append(self._points.sentence(self.names.left_out if self.names else 0))
         return [*lines, *(self._lines or [made_by()])]
@@ -216,7 +218,8 @@ class EphChart:
             Patch(fc=colour, ec=style.LINE, lw=0.4, label=label) for colour, label in style.key_of_tints(states)
         ]
         if self._fan is not None and self._fan[2]:
-            found.append(Patch(fc=(0, 0, 0, 0.10), ec=(0, 0, 0, 0.45), lw=0.4, label="P10–P90 of the total"))
+            label = "P10–P90 of the total" if self._percentiles else "lines move here"
+            found.append(Patch(fc=(0, 0, 0, 0.10), ec=(0, 0, 0, 0.45), lw=0.4, label=label))
         if self._over is not None:
             found.append(Line2D([], [], color=style.OVER, lw=1.5, label=f"lines of {self._over.element}"))
         return found + (self._points.handles() if self._points is not None else [])

@@ -146,7 +146,12 @@ def draw_fan(ax: Axes, low: Chart, high: Chart, window: shapely.Polygon, ids: Id
         for name, shape in before.items()
     ]
     least = 2e-5 * window.area
-    parts = [part for part in polygons_of(shapely.union_all(moved)) if part.area > least]
+    parts = [
+        # where two regions meet rounding leaves holes without an area
+        shapely.Polygon(part.exterior, [hole for hole in part.interiors if shapely.Polygon(hole).area > least])
+        for part in polygons_of(shapely.union_all(moved))
+        if part.area > least
+    ]
     if not parts:
         return False
     fill, edge = to_rgba(INK, 0.10), to_rgba(INK, 0.45)

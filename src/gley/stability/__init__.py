@@ -8,6 +8,7 @@ from gley.stability.chart import chart, chart_at
 from gley.stability.chart_types import Boundary, Chart, Conditions, Field
 from gley.stability.couples import couple_potentials, couples
 from gley.stability.data import CHART_ONLY, OFFERED, check_names, species
+from gley.stability.overlay import Overlap, overlay
 from gley.stability.reference import reference
 from gley.stability.water import IMPLAUSIBLE_mV, beyond_water, water_lines
 from gley.stability.working import working
@@ -21,6 +22,7 @@ __all__ = [
     "Conditions",
     "Field",
     "IMPLAUSIBLE_mV",
+    "Overlap",
     "assign",
     "assignment",
     "beyond_water",
@@ -31,6 +33,7 @@ __all__ = [
     "couples",
     "measured_elements",
     "named_fields",
+    "overlay",
     "reference",
     "species",
     "water_lines", "working",
