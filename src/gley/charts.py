@@ -168,7 +168,7 @@ def overlap_counts(sheets: tuple[ChartSheet, ...], fields: pd.DataFrame) -> pd.D
         held = held.rename(columns={over: "over_field", under: "under_field"})
         table = drawn.merge(held, how="outer", on=["over_field", "under_field"])
         table = table.fillna({"share_of_chart": 0.0, "samples": 0, "names": ""})
-        table = table.assign(over_element=over, under_element=under)
+        table = table.assign(over_element=over, under_element=under, samples=table["samples"].astype(int))
         tables.append(table.sort_values(["share_of_chart", "over_field", "under_field"], ascending=[False, True, True]))
     return pd.concat(tables, ignore_index=True) if tables else pd.DataFrame()
 

@@ -127,3 +127,51 @@ def test_chart_folder_is_written_once(capsys, tmp_path):
     assert "--overwrite" in err
     assert {path.name: path.read_bytes() for path in (tmp_path / "charts").iterdir()} == first
     assert answer(capsys, *words, "--overwrite")[0] == 0
+
+
+def test_over_lays_one_element_over_another(capsys):
+    words = ("chart", "Fe", "--total", "1e-5", "--ligand", "C=2e-3", "--over", "As=1e-7")
+    code, out, _ = answer(capsys, *words, "--json")
+    record = json.loads(out)
+    assert code == 0
+    assert record["over"]["element"] == "As"
+    assert record["over"]["conditions"]["total_mol_L"] == 1e-7
+    assert sum(item["share"] for item in record["overlaps"]) == pytest.approx(1.0, abs=1e-4)
+    _, text, _ = answer(capsys, *words)
+    assert "As over Fe, part of the chart:" in text
+    assert "%  HAsO4^2- over ferrihydrite (2-line)" in text
+
+
+def test_over_writes_its_regions_as_a_table(capsys, tmp_path):
+    code, _, _ = answer(capsys, "chart", "Fe", "--over", "As", "--out", str(tmp_path / "c"))
+    assert code == 0
+    lines = (tmp_path / "c" / "As_over_Fe_overlaps.csv").read_text(encoding="utf-8").splitlines()
+    assert lines[0] == "over_element,over_field,under_element,under_field,share_of_chart"
+    assert (tmp_path / "c" / "As_over_Fe.svg").exists()
+
+
+def test_fan_is_drawn_between_two_conditions(capsys, tmp_path):
+    code, out, _ = answer(capsys, "chart", "Fe", "--total", "1e-5,1e-7,1e-4", "--fan", "--json")
+    record = json.loads(out)
+    assert code == 0
+    assert record["chart"]["conditions"]["total_mol_L"] == 1e-5
+    assert [item["conditions"]["total_mol_L"] for item in record["fan"]] == [1e-7, 1e-4]
+    assert answer(capsys, "chart", "Mn", "--temperature", "5,25", "--fan", "--out", str(tmp_path / "f"))[0] == 0
+    svg = (tmp_path / "f" / "Mn.svg").read_text(encoding="utf-8")
+    assert 'id="fan' in svg
+    code, _, err = answer(capsys, "chart", "Fe", "--fan")
+    assert (code, "A fan is drawn between two conditions" in err) == (2, True)
+
+
+def test_inert_leaves_dinitrogen_or_sulfate_out_of_the_reaction(capsys):
+    # nitrate and N2 react only with microbes (common practice): without N2 nitrite and ammonium have fields
+    _, out, _ = answer(capsys, "chart", "N", "--inert", "N2", "--json")
+    names = {item["name"] for item in json.loads(out)["fields"]}
+    assert "N2(aq)" not in names
+    assert {"NO3^-", "NO2^-", "NH4^+"} <= names
+    _, out, _ = answer(capsys, "chart", "Fe", "--ligand", "S=1e-3", "--inert", "sulfate", "--json")
+    record = json.loads(out)
+    assert record["conditions"]["ligands_mol_L"] == {"S(VI)": 1e-3}
+    assert "mackinawite" not in {item["name"] for item in record["fields"]}
+    code, _, err = answer(capsys, "chart", "Fe", "--inert", "gold")
+    assert (code, "'gold' can't be taken as inert" in err) == (2, True)
