@@ -68,7 +68,7 @@ class Bath:
         with np.errstate(divide="ignore", invalid="ignore"):
             log_total = np.log10(self.companions.get(COMPANION, np.full(len(self.X), np.nan)))
         known = np.isfinite(log_total)
-        if not known.any():
+        if not known.any() and not every:
             return found
         split = []
         for environment in found:

@@ -36,12 +36,11 @@ def gaps(
     values = [level - level[rows, own][:, None]]
     rates = [lines_per_pH - lines_per_pH[rows, own][:, None]]
     values[0][rows, own] = np.inf
-    kin = target.kin[member]
-    if kin.any():
-        some = np.flatnonzero(kin.any(axis=0))
+    some = target.sharing
+    if len(some):
         with np.errstate(invalid="ignore"):
             room = lines.q[rows, member][:, None] - lines.q[:, some]
-        values.append(np.where(kin[:, some], room, np.inf))
+        values.append(np.where(target.kin[np.ix_(member, some)], room, np.inf))
         rates.append(forms_per_pH[rows, member][:, None] - forms_per_pH[:, some])
     for (fence, slope), fence_per_pH in zip(environment.fences, environment.fences_per_pH, strict=True):
         values.append(-(fence + slope * pe)[:, None])

@@ -99,6 +99,11 @@ class System:
         same = self.candidate_of[:, None] == self.candidate_of[None, :]
         return same & ~np.eye(len(self.members), dtype=bool)
 
+    @cached_property
+    def sharing(self) -> np.ndarray:
+        """Members that share a pool with others."""
+        return np.flatnonzero(self.kin.any(axis=0))
+
     def index(self, name: str) -> int:
         """Index of a member by its name."""
         return [item.name for item in self.members].index(name)
