@@ -17,9 +17,10 @@ from gley.stability.outcome import outcomes, saturation
 from gley.stability.solve import Choice, Solved, fields, solve
 from gley.stability.status import Remarks, limits_of, usable
 from gley.stability.systems import System
+from gley.stability.threads import one_blas_thread
 from gley.stability.waters import Waters, waters
 
-BLOCK = 8192
+BLOCK = 16384
 """Samples solved at a time: keeps the working arrays in the processor's cache and memory bounded."""
 
 ALWAYS = ("Fe", "Mn", "As")
@@ -64,6 +65,7 @@ def assign(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | 
     return assignment(samples, elements, settings).fields
 
 
+@one_blas_thread()
 def assignment(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | None = None) -> Assignment:
     """Fields as from `assign`, and with them the probability of every field that a sample may lie in.
 
@@ -85,6 +87,7 @@ def assignment(samples: pd.DataFrame, elements: Sequence[str], settings: Setting
     return Assignment(_joined(tables, "fields"), _joined(rivals, "rivals"))
 
 
+@one_blas_thread()
 def named_fields(samples: pd.DataFrame, elements: Sequence[str], settings: Settings | None = None) -> pd.DataFrame:
     """Only which field each sample lies in: `sample`, `element`, `field` (empty where it can't be assigned).
 
